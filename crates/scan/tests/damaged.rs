@@ -1,4 +1,4 @@
-//! Damaged lists and logs: each is refused with exactly the message that stands beside it.
+//! Damaged lists and logs: each is refused with exactly the message that is committed for it.
 #![allow(clippy::unwrap_used, reason = "tests may stop at what should be there")]
 
 use std::fs;
@@ -6,15 +6,15 @@ use std::path::{Path, PathBuf};
 
 use values::{Diagnostic, Wavelength};
 
-/// Every file of a folder of damaged input with the message committed beside it, `NAME.message`.
+/// Every file of a folder of damaged input, with the message committed for it in `messages/FOLDER/NAME.txt`.
 fn damaged(folder: &str) -> Vec<(PathBuf, String)> {
-    let folder = Path::new(env!("CARGO_MANIFEST_DIR")).join("../../tests/data/damaged").join(folder);
-    let mut files: Vec<PathBuf> = fs::read_dir(&folder).unwrap().map(|entry| entry.unwrap().path()).collect();
-    files.retain(|path| path.extension().is_some_and(|extension| extension != "message"));
+    let root = Path::new(env!("CARGO_MANIFEST_DIR"));
+    let entries = fs::read_dir(root.join("../../tests/data/damaged").join(folder)).unwrap();
+    let mut files: Vec<PathBuf> = entries.map(|entry| entry.unwrap().path()).collect();
     files.sort();
     let message = |path: &PathBuf| {
-        let beside = path.with_file_name(format!("{}.message", name(path)));
-        fs::read_to_string(&beside).unwrap_or_else(|_| panic!("no {}", beside.display())).trim_end().to_owned()
+        let committed = root.join("tests/messages").join(folder).join(format!("{}.txt", name(path)));
+        fs::read_to_string(&committed).unwrap_or_else(|_| panic!("no {}", committed.display())).trim_end().to_owned()
     };
     files.iter().map(|path| (path.clone(), message(path))).collect()
 }
