@@ -5,7 +5,7 @@ use values::{Diagnostic, Measured};
 use crate::parse::parse;
 use crate::scan::is_blank;
 use crate::source::Version;
-use crate::write::{Sink, Written, is_word, written};
+use crate::write::{LINE, Sink, Written, is_word, written};
 
 /// A value to be written.
 #[derive(Clone, Debug, PartialEq)]
@@ -170,7 +170,7 @@ fn item(sink: &mut Sink, tag: &str, datum: &Datum, version: Version) -> Result<(
     let value = written_datum(datum, &text, version);
     let width = match &value {
         Written::Token(token) => token.chars().count(),
-        Written::Field(_) => 0,
+        Written::Field(_) => LINE,
     };
     sink.tag(tag, width);
     sink.written(&value);

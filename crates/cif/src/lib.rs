@@ -1,8 +1,8 @@
 //! CIF 1.1 and CIF 2.0 text to values and back, with line and column; knows nothing of crystals.
 //!
-//! [`parse`] turns the bytes of a file into a [`Document`] of [`Block`]s; a block holds single items and [`Loop`]s, and
+//! [`parse()`] turns the bytes of a file into a [`Document`] of [`Block`]s; a block holds single items and [`Loop`]s, and
 //! may hold save frames, which are blocks themselves. Every [`Value`] knows its place, its [`Kind`], and, as
-//! [`Value::number`], its value with s.u. [`write`] turns a document back into text, and [`Builder`] makes text from
+//! [`Value::number`], its value with s.u. [`write()`] turns a document back into text, and [`Builder`] makes text from
 //! values. [`aliases`] gives old and new data names one internal name.
 //!
 //! The way through the modules: `source` (bytes → text, version, line and column) → `scan` and `brackets` (one value at a place) →

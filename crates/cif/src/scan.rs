@@ -316,17 +316,14 @@ impl<'s> Scanner<'s> {
 
     fn check_unquoted(&self, range: Range<usize>, v2: bool) -> Result<(), Diagnostic> {
         let token = self.slice(range.clone());
-        let shown = shorten(token);
+        let shown = || shorten(token);
         match token.as_bytes().first() {
             Some(b'_') => {
-                let (found, mend) = (
-                    format!("the tag `{shown}` where a value belongs"),
-                    "close the list before it, or quote the value",
-                );
-                Err(self.fault(range, found, "a value", mend))
+                let found = format!("the tag `{}` where a value belongs", shown());
+                Err(self.fault(range, found, "a value", "close the list before it, or quote the value"))
             }
             Some(b'$') => {
-                let found = format!("the value `{shown}` begins with $");
+                let found = format!("the value `{}` begins with $", shown());
                 Err(self.fault(range, found, "a value; $ is reserved", "quote the value"))
             }
             Some(b'[' | b']') if !v2 && !is_old_bracket_text(token) => Err(self.looks_new(range, "[ and ]")),
@@ -334,7 +331,7 @@ impl<'s> Scanner<'s> {
                 Err(self.looks_new(range, "{ and }"))
             }
             Some(b'd' | b'D' | b's' | b'S' | b'l' | b'L' | b'g' | b'G') if is_reserved(token) => {
-                let found = format!("the reserved word `{shown}` where a value belongs");
+                let found = format!("the reserved word `{}` where a value belongs", shown());
                 Err(self.fault(range, found, "a value", "quote the value, or add the value that is missing before it"))
             }
             _ => Ok(()),

@@ -18,7 +18,7 @@ use crate::source::{LINE_LIMIT, Version};
 use crate::value::{Kind, Quoting, Value};
 
 /// Lines are shorter than this where their values allow it.
-const LINE: usize = 80;
+pub(crate) const LINE: usize = 80;
 
 /// Values of items stand below each other from this column on, where the tags are short enough.
 const VALUE_COLUMN: usize = 34;
@@ -224,7 +224,7 @@ impl Sink {
         }
     }
 
-    /// The tag of an item, filled up to the column of the values.
+    /// The tag of an item, filled up to the column of the values if a value of that width then fits into the line.
     pub(crate) fn tag(&mut self, tag: &str, value_width: usize) {
         self.break_line();
         self.token(tag);
@@ -240,7 +240,8 @@ impl Sink {
             match entry {
                 Entry::Item(item) => {
                     let width = match item.value.kind() {
-                        Kind::Text(text) => text.chars().count() + 2,
+                        Kind::Text(text) if text.contains('\n') => LINE,
+                        Kind::Text(text) => text.chars().take(LINE).count() + 2,
                         _ => 1,
                     };
                     self.tag(item.tag, width);
