@@ -16,8 +16,8 @@ HEADER = """\
 #    carries them (SpaceGroup.xhm and SpaceGroup.hall)
 # range: 230 space groups in 564 settings
 # made by: tools/space_groups.py
-# checked by: crates/lattice/tests/settings.rs (operations of each row against the tables of moyo, and against sets of
-#    operations that gemmi made from the symbols)
+# checked by: crates/lattice/src/symmetry/settings.rs (number, Hall symbol and operations of the 530 against the tables of
+#    moyo 0.22); crates/lattice/tests/outside.rs (operations read from the symbols against those of gemmi)
 order,number,standard,xhm,hall"""
 
 

@@ -1,5 +1,7 @@
 //! A change of basis and origin, `x′ = V x + v`, in exact fractions.
 
+use std::fmt;
+
 use super::hall::error;
 use super::operation::{Operation, TRANSLATION_UNIT};
 use crate::SymmetryError;
@@ -34,6 +36,16 @@ impl Basis {
             return Err(error(at, format!("change of basis ({inner})"), "three independent axes"));
         }
         Ok(basis)
+    }
+
+    /// This change after `first`.
+    pub(super) fn after(&self, first: &Self) -> Self {
+        let matrix = product(&self.matrix, &first.matrix).map(|row| row.map(|entry| entry / UNIT));
+        let shift = std::array::from_fn(|i| {
+            let moved: i64 = (0..3).map(|k| self.matrix[i][k] * first.shift[k]).sum();
+            (self.shift[i] + moved / UNIT).rem_euclid(UNIT)
+        });
+        Self { matrix, shift }
     }
 
     /// `24³ det V`.
@@ -99,6 +111,37 @@ impl Basis {
             translation[i] = (self.shift[i] + whole_quotient(moved, UNIT)? - back).rem_euclid(UNIT) as i32;
         }
         Some(Operation { rotation, translation })
+    }
+}
+
+impl fmt::Display for Basis {
+    /// `x-y,1/2*x+1/2*y,z+1/4`.
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        for (i, row) in self.matrix.iter().enumerate() {
+            let mut text = String::new();
+            for (entry, letter) in row.iter().zip(["*x", "*y", "*z"]).chain([(&self.shift[i], "")]) {
+                let sign = if *entry < 0 { "-" } else { "+" };
+                let size = match entry.abs() {
+                    0 => continue,
+                    UNIT if !letter.is_empty() => letter.trim_start_matches('*').to_owned(),
+                    size => format!("{}{letter}", in_lowest_terms(size)),
+                };
+                text.push_str(sign);
+                text.push_str(&size);
+            }
+            let text = text.strip_prefix('+').unwrap_or(&text);
+            write!(f, "{}{}", if i > 0 { "," } else { "" }, if text.is_empty() { "0" } else { text })?;
+        }
+        Ok(())
+    }
+}
+
+/// A number of 24ths above zero as `1/2` or `3`.
+fn in_lowest_terms(size: i64) -> String {
+    let divisor = (1..=UNIT).rev().find(|d| size % d == 0 && UNIT % d == 0).unwrap_or(1);
+    match (size / divisor, UNIT / divisor) {
+        (whole, 1) => whole.to_string(),
+        (top, bottom) => format!("{top}/{bottom}"),
     }
 }
 

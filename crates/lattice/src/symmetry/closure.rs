@@ -11,8 +11,16 @@ pub(crate) const MOST_OPERATIONS: usize = 192;
 /// All products of `generators`, the identity first and the others sorted.
 ///
 /// # Errors
-/// [`SymmetryError`] when there are more than [`MOST_OPERATIONS`]: the generators belong to no group of this kind.
+/// [`SymmetryError`] when there are more than [`MOST_OPERATIONS`], or when a rotation has no inverse among whole numbers:
+/// the generators belong to no group of this kind.
 pub(crate) fn close(generators: &[Operation]) -> Result<Vec<Operation>, SymmetryError> {
+    if let Some(wrong) = generators.iter().find(|generator| generator.determinant().abs() != 1) {
+        return Err(SymmetryError::new(
+            format!("operation `{wrong}` whose rotation has determinant {}", wrong.determinant()),
+            "determinant 1 or -1",
+            "correct the operation",
+        ));
+    }
     let mut known = HashSet::from([Operation::IDENTITY]);
     let mut group = vec![Operation::IDENTITY];
     let mut used: Vec<Operation> = Vec::new();

@@ -86,7 +86,7 @@ fn plain(c: char) -> char {
 }
 
 /// Translations of a lattice letter beside the whole ones, in 24ths. Source: International Tables B (2010), Table
-/// A1.4.2.2; S and T (rhombohedral along a and b) from Hall (1981).
+/// A1.4.2.2; S and T (rhombohedral along b and along a) from Hall (1981).
 fn centring_vectors(letter: char) -> Option<&'static [[i32; 3]]> {
     Some(match letter.to_ascii_uppercase() {
         'P' => &[],
@@ -224,17 +224,21 @@ pub(super) fn error(offset: usize, found: String, expected: &str) -> SymmetryErr
         .at(offset)
 }
 
-/// All operations of the group that a Hall symbol stands for, the identity first, the others sorted.
-pub(crate) fn operations(symbol: &str) -> Result<Vec<Operation>, SymmetryError> {
+/// Generators of the group that a Hall symbol stands for, in the basis at the end of it.
+pub(crate) fn generators(symbol: &str) -> Result<Vec<Operation>, SymmetryError> {
     let hall = parse(symbol)?;
-    let group = close(&hall.generators)?;
-    let Some(basis) = hall.basis else { return Ok(group) };
-    let moved = basis.apply(&hall.generators, &pure_translations(&group)).ok_or_else(|| {
+    let Some(basis) = hall.basis else { return Ok(hall.generators) };
+    let translations = pure_translations(&close(&hall.generators)?);
+    basis.apply(&hall.generators, &translations).ok_or_else(|| {
         SymmetryError::new(
             format!("Hall symbol `{}` whose change of basis leaves the lattice", symbol.trim()),
             "new axes that are translations of the lattice, and an origin on the grid of 1/24",
             "correct the change of basis, or list the operations",
         )
-    })?;
-    close(&moved)
+    })
+}
+
+/// All operations of the group that a Hall symbol stands for, the identity first, the others sorted.
+pub(crate) fn operations(symbol: &str) -> Result<Vec<Operation>, SymmetryError> {
+    close(&generators(symbol)?)
 }

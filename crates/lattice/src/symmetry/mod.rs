@@ -1,7 +1,7 @@
 //! Symmetry in all its spellings.
 //!
 //! [`Operation`] reads and writes triplets; [`SpaceGroup`] is built from operations, a Hall symbol, a Hermann–Mauguin
-//! symbol or a number; [`resolve`] weighs what a file states of these and names contradictions. Inside: `triplet` and
+//! symbol or a number; [`resolve()`] weighs what a file states of these and names contradictions. Inside: `triplet` and
 //! `hall` are total readers, `closure` completes a group, `settings` is the table, `spellings` and `symbols` look up
 //! symbols, `identify` finds the names of a set of operations.
 

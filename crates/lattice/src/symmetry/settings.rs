@@ -62,8 +62,10 @@ fn setting(fields: &[&'static str]) -> Option<Setting> {
 #[cfg(test)]
 mod tests {
     use super::{SETTINGS, TEXT};
-    use moyo::data::hall_symbol_entry;
+    use moyo::data::{Setting as MoyoSetting, hall_symbol_entry, operations_from_number};
     use values::Table;
+
+    use crate::{Operation, SpaceGroup};
 
     #[test]
     fn the_table_has_its_origin_and_every_row_is_read() {
@@ -81,6 +83,26 @@ mod tests {
             let entry = hall_symbol_entry(order).unwrap();
             assert_eq!(i32::from(setting.number), entry.number, "{}", setting.xhm);
             assert_eq!(setting.hall, entry.hall_symbol.replace('=', "\""), "{}", setting.xhm);
+        }
+    }
+
+    #[test]
+    fn the_530_settings_have_the_operations_of_moyo() {
+        // Outside: moyo 0.22, which has a reader of Hall symbols and a closure of its own.
+        for (order, setting) in (1..=530).zip(SETTINGS.iter()) {
+            let theirs =
+                operations_from_number(i32::from(setting.number), MoyoSetting::HallNumber(order), false).unwrap();
+            let mut theirs: Vec<Operation> = theirs
+                .iter()
+                .map(|o| Operation {
+                    rotation: std::array::from_fn(|i| std::array::from_fn(|j| o.rotation[(i, j)] as i8)),
+                    translation: std::array::from_fn(|i| ((o.translation[i] * 24.0).round() as i32).rem_euclid(24)),
+                })
+                .collect();
+            let mut ours = SpaceGroup::from_setting(setting).operations().to_vec();
+            theirs.sort_unstable();
+            ours.sort_unstable();
+            assert_eq!(ours, theirs, "{}", setting.xhm);
         }
     }
 }

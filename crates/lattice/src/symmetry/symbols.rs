@@ -199,17 +199,19 @@ fn unknown_mark(symbol: &str, mark: &str, settings: &[&Setting]) -> SymmetryErro
 
 fn unknown(symbol: &str) -> SymmetryError {
     let wanted: Vec<char> = key(symbol).chars().collect();
-    let mut near: Vec<(usize, usize, &str)> = INDEX
+    let mut near: Vec<(usize, usize, usize, &str)> = INDEX
         .iter()
         .filter(|(key, _)| !key.contains(':'))
         .flat_map(|(key, places)| {
             let distance = edit_distance(&wanted, &key.chars().collect::<Vec<_>>());
-            places.iter().flatten().map(move |place| (distance, *place, SETTINGS[*place].plain()))
+            // Of symbols equally near, a wrong letter is likelier than a missing one.
+            let missing = wanted.len().abs_diff(key.chars().count());
+            places.iter().flatten().map(move |place| (distance, missing, *place, SETTINGS[*place].plain()))
         })
         .collect();
     near.sort_unstable();
     let mut names: Vec<&str> = Vec::new();
-    for (_, _, name) in near {
+    for (.., name) in near {
         if names.len() < 3 && !names.contains(&name) {
             names.push(name);
         }
