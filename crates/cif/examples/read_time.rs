@@ -1,7 +1,8 @@
 //! How long one CIF takes to read, and how much there is in it.
 //!
 //! `read_time make KIND MEGABYTES FILE` writes a file of that size first: `loops` (rows of numbers with s.u.), `ones` (a
-//! loop of single digits, the most values for a size), `items` (short tags, each with a value), `texts` (text fields), `lists`.
+//! loop of single digits, the most values for a size), `items` (short tags, each with a value), `texts` (text fields),
+//! `lists`, `blocks` (headings alone).
 //! `read_time FILE` reads it. Peak memory: `/usr/bin/time -v` around the second.
 
 use std::error::Error;
@@ -39,9 +40,10 @@ fn made(kind: &str, megabytes: usize) -> Result<String, Box<dyn Error>> {
             }
             "ones" => text.push_str("1 "),
             "items" => writeln!(text, "_{number:x} 1")?,
+            "blocks" => writeln!(text, "data_{number:x}")?,
             "texts" => writeln!(text, "_t{number}\n;A text of some words\n and two lines\n;")?,
             "lists" => writeln!(text, "[1 [2.5(1) 'a b'] {{'k':[x y]}}]")?,
-            _ => return Err("KIND: loops, ones, items, texts, lists".into()),
+            _ => return Err("KIND: loops, ones, items, texts, lists, blocks".into()),
         }
     }
     Ok(text)

@@ -1,4 +1,4 @@
-//! Names are the same whatever their case; finding one among millions takes constant time.
+//! Names are the same whatever their case, and are found by their hash.
 //!
 //! CIF 2.0 compares names after Unicode normalisation and case folding. Here each character is lower-cased and not
 //! normalised: two names that differ only in how an accent is composed stay two names.
@@ -13,17 +13,16 @@ pub(crate) fn same(a: &str, b: &str) -> bool {
     a.chars().flat_map(char::to_lowercase).eq(b.chars().flat_map(char::to_lowercase))
 }
 
-const EMPTY: u32 = u32::MAX;
-
-/// Open-addressing table from a name to the number of its record, eight bytes a slot.
+/// From a name to the number of its record: the hashes of all names in order, each with its record, in eight bytes.
 ///
-/// The records stay with the caller, who compares them; a `HashMap` would hold every name a second time. The hash is
-/// keyed at random, so that no file can be made to collide.
+/// The records stay with the caller, who compares them; a `HashMap` would hold every name a second time, and takes a
+/// cache miss for each name where sorting takes none. The hash is keyed at random, so that no file can be made to
+/// collide. A name is found once [`NameIndex::sort`] was called.
 #[derive(Clone, Debug, Default)]
 pub(crate) struct NameIndex {
     keys: RandomState,
-    slots: Vec<(u32, u32)>,
-    filled: usize,
+    /// Hash in the upper half, record in the lower.
+    entries: Vec<u64>,
 }
 
 impl NameIndex {
@@ -48,66 +47,44 @@ impl NameIndex {
         (hasher.finish() >> 32) as u32
     }
 
-    /// Number of the record with that name, which `is_same` recognises.
+    pub(crate) fn add(&mut self, container: u32, name: &str, record: u32) {
+        self.entries.push(u64::from(self.hash(container, name)) << 32 | u64::from(record));
+    }
+
+    pub(crate) fn sort(&mut self) {
+        self.entries.sort_unstable();
+        self.entries.shrink_to_fit();
+    }
+
+    /// Number of the first record with that name, which `is_same` recognises.
     pub(crate) fn find(&self, container: u32, name: &str, is_same: impl Fn(u32) -> bool) -> Option<u32> {
-        if self.slots.is_empty() {
-            return None;
-        }
-        self.slots[self.slot(self.hash(container, name), &is_same)].found()
-    }
-
-    /// Adds a record; the number of the one that has the name already, if there is one.
-    pub(crate) fn insert(
-        &mut self,
-        container: u32,
-        name: &str,
-        record: u32,
-        is_same: impl Fn(u32) -> bool,
-    ) -> Option<u32> {
-        if (self.filled + 1) * 4 > self.slots.len() * 3 {
-            self.grow();
-        }
         let hash = self.hash(container, name);
-        let slot = self.slot(hash, &is_same);
-        let found = self.slots[slot].found();
-        if found.is_none() {
-            self.slots[slot] = (hash, record);
-            self.filled += 1;
-        }
-        found
+        let first = self.entries.partition_point(|entry| hash_of(*entry) < hash);
+        let run = self.entries[first..].iter().take_while(|entry| hash_of(**entry) == hash);
+        run.map(|entry| record_of(*entry)).find(|record| is_same(*record))
     }
 
-    /// Slot of the record, or the empty one where it belongs. At least a quarter of the slots is empty.
-    fn slot(&self, hash: u32, is_same: &impl Fn(u32) -> bool) -> usize {
-        let mask = self.slots.len() - 1;
-        let mut slot = hash as usize & mask;
-        loop {
-            let (other, record) = self.slots[slot];
-            if record == EMPTY || (other == hash && is_same(record)) {
-                return slot;
+    /// Calls `found` with each record whose name occurred before, and the record of its first occurrence.
+    pub(crate) fn repeats(&self, is_same: impl Fn(u32, u32) -> bool, mut found: impl FnMut(u32, u32)) {
+        for run in self.entries.chunk_by(|a, b| hash_of(*a) == hash_of(*b)).filter(|run| run.len() > 1) {
+            // Names of equal hash are nearly always equal: one first record for all.
+            let mut firsts: Vec<u32> = Vec::new();
+            for record in run.iter().map(|entry| record_of(*entry)) {
+                match firsts.iter().find(|first| is_same(**first, record)) {
+                    Some(first) => found(*first, record),
+                    None => firsts.push(record),
+                }
             }
-            slot = (slot + 1) & mask;
-        }
-    }
-
-    fn grow(&mut self) {
-        let size = (self.slots.len() * 2).max(16);
-        let old = std::mem::replace(&mut self.slots, vec![(0, EMPTY); size]);
-        for (hash, record) in old.into_iter().filter(|slot| slot.1 != EMPTY) {
-            let slot = self.slot(hash, &|_| false);
-            self.slots[slot] = (hash, record);
         }
     }
 }
 
-trait Slot {
-    fn found(&self) -> Option<u32>;
+fn hash_of(entry: u64) -> u32 {
+    (entry >> 32) as u32
 }
 
-impl Slot for (u32, u32) {
-    fn found(&self) -> Option<u32> {
-        (self.1 != EMPTY).then_some(self.1)
-    }
+fn record_of(entry: u64) -> u32 {
+    (entry & u64::from(u32::MAX)) as u32
 }
 
 #[cfg(test)]
@@ -124,18 +101,22 @@ mod tests {
 
     #[test]
     fn each_of_ten_thousand_names_is_found_in_its_own_container() {
-        let names: Vec<String> = (0..10_000).map(|i| format!("_Name_{i}")).collect();
+        let mut names: Vec<String> = (0..10_000).map(|i| format!("_Name_{i}")).collect();
+        names.extend(["_NAME_7".to_owned(), "_name_3".to_owned(), "_name_7".to_owned()]);
         let mut index = NameIndex::default();
         for (i, name) in names.iter().enumerate() {
-            let is_same = |other: u32| same(&names[other as usize], name);
-            assert_eq!(index.insert(7, name, u32::try_from(i).unwrap(), is_same), None);
+            index.add(7, name, u32::try_from(i).unwrap());
         }
-        for (i, name) in names.iter().enumerate() {
+        index.sort();
+        for (i, name) in names.iter().enumerate().take(10_000) {
             let upper = name.to_uppercase();
             let found = index.find(7, &upper, |other| same(&names[other as usize], &upper));
             assert_eq!(found, Some(u32::try_from(i).unwrap()));
             assert_eq!(index.find(8, &upper, |_| false), None);
         }
-        assert_eq!(index.insert(7, "_NAME_5", 1, |other| same(&names[other as usize], "_NAME_5")), Some(5));
+        let mut repeats = Vec::new();
+        index.repeats(|a, b| same(&names[a as usize], &names[b as usize]), |first, again| repeats.push((again, first)));
+        repeats.sort_unstable();
+        assert_eq!(repeats, [(10_000, 7), (10_001, 3), (10_002, 7)]);
     }
 }

@@ -3,6 +3,7 @@
 use values::Diagnostic;
 
 use crate::document::{Container, Document, LOOP_BIT, LoopRecord, NO_PARENT, NameRecord};
+use crate::faults;
 use crate::names::same;
 use crate::number;
 use crate::scan::{Form, Inside, Scanner, Span, is_reserved, narrow};
@@ -21,7 +22,7 @@ const MAX_WARNINGS: usize = 100;
 /// CIF 1.1 (read as Latin-1), long lines and names, `5.43()`, a block name twice, no block at all.
 ///
 /// # Errors
-/// The first fault, at its place: an encoding or character that no CIF may hold; a string, text field, list, table or
+/// The first fault, at its place (names that occur twice are looked for last): an encoding or character that no CIF may hold; a string, text field, list, table or
 /// save frame that is not closed (where it opened); a value without tag or a tag without value; a tag twice in a block; a
 /// loop without values or cut short (at its `loop_`, with the counts); a reserved word; text before the first block.
 pub fn parse(bytes: &[u8], file: &str) -> Result<Document, Diagnostic> {
@@ -104,21 +105,54 @@ impl Parser {
             }
             let token = classify(&scanner, at);
             if self.block.is_none() && !matches!(token, Token::Data(_)) {
-                return Err(before_first_block(&scanner, at));
+                return Err(faults::before_first_block(&scanner, at));
             }
             at = match token {
                 Token::Data(end) => self.open_block(document, at, end)?,
                 Token::Save(end) => self.save(document, at, end)?,
                 Token::Name(end) => self.item(document, at, end)?,
                 Token::Loop(end) => self.looped(document, at, end)?,
-                Token::Reserved(end) => return Err(reserved(&scanner, at, end)),
-                Token::Value => return Err(stray_value(&scanner, at)?),
+                Token::Reserved(end) => return Err(faults::reserved(&scanner, at, end)),
+                Token::Value => return Err(faults::stray_value(&scanner, at)?),
             };
         }
         self.close(document)?;
+        self.check_names(document)?;
         if document.containers.is_empty() {
             let message = Diagnostic::new("no data block", "data_NAME and items", "check that this is the right file");
             self.kept.list.push(message.at(document.source.location(0, 0)));
+        }
+        Ok(())
+    }
+
+    /// Sorts the names and looks for those that occur twice: an error for tags, a warning for blocks and frames.
+    fn check_names(&mut self, document: &mut Document) -> Result<(), Diagnostic> {
+        document.name_index.sort();
+        document.container_index.sort();
+        let mut twice: Option<(u32, u32)> = None;
+        document.name_index.repeats(
+            |a, b| {
+                let (a, b) = (document.names[a as usize], document.names[b as usize]);
+                a.container == b.container && same(document.tag(a), document.tag(b))
+            },
+            |first, again| twice = twice.into_iter().chain([(again, first)]).min(),
+        );
+        if let Some((again, first)) = twice {
+            return Err(faults::tag_twice(document, document.names[first as usize], document.names[again as usize]));
+        }
+        let mut repeats = Vec::new();
+        document.container_index.repeats(
+            |a, b| {
+                document.containers[a as usize].parent == document.containers[b as usize].parent
+                    && same(document.container_name(a), document.container_name(b))
+            },
+            |first, again| repeats.push((again, first)),
+        );
+        repeats.sort_unstable();
+        for (again, first) in repeats {
+            if self.kept.has_room() {
+                self.kept.list.push(faults::container_twice(document, first, again));
+            }
         }
         Ok(())
     }
@@ -156,25 +190,9 @@ impl Parser {
         let number = narrow(document.containers.len());
         let first = narrow(document.names.len());
         document.containers.push(Container { heading: narrow(at), parent, names: (first, first) });
-        let mut index = std::mem::take(&mut document.container_index);
-        let name = document.container_name(number);
-        let is_same = |other: u32| {
-            document.containers[other as usize].parent == parent && same(document.container_name(other), name)
-        };
-        let other = index.insert(parent, name, number, is_same);
-        if let Some(other) = other.filter(|_| self.kept.has_room()) {
-            let before = document.containers[other as usize].heading as usize;
-            let what = if parent == NO_PARENT { "data block" } else { "save frame" };
-            let found = format!(
-                "the {what} name `{}` occurs again; it is in line {} too",
-                shorten(name),
-                document.source.location(before, before).line
-            );
-            let message =
-                Diagnostic::new(found, "another name", format!("rename one; by name only the first {what} is found"));
-            self.kept.list.push(message.at(document.source.location(at, at + 5 + name.len())));
-        }
-        document.container_index = index;
+        let scanner = Scanner::new(&document.source);
+        let name = scanner.slice(at + "data_".len()..scanner.token_end(at));
+        document.container_index.add(parent, name, number);
         number
     }
 
@@ -227,21 +245,8 @@ impl Parser {
         }
         let record = narrow(document.names.len());
         document.names.push(NameRecord { at: narrow(at), container, place });
-        let names = &document.names;
-        let is_same = |other: u32| {
-            let other = &names[other as usize];
-            let start = other.at as usize;
-            other.container == container && same(scanner.slice(start..scanner.token_end(start)), name)
-        };
-        let Some(other) = document.name_index.insert(container, name, record, is_same) else { return Ok(()) };
-        let first = document.names[other as usize].at as usize;
-        let line = document.source.location(first, first).line;
-        Err(scanner.fault(
-            at..end,
-            format!("the tag `{}` occurs a second time in its block; first in line {line}", shorten(name)),
-            "each tag once in a block",
-            "delete one of the two, or begin a new block with data_NAME",
-        ))
+        document.name_index.add(container, name, record);
+        Ok(())
     }
 
     fn item(&mut self, document: &mut Document, at: usize, end: usize) -> Result<usize, Diagnostic> {
@@ -293,7 +298,7 @@ impl Parser {
         let names = document.names.len() - first_name;
         let values = &document.values[first_value..];
         if names == 0 || values.is_empty() || !values.len().is_multiple_of(names) {
-            return Err(bad_loop(&scanner, at..end, names, values));
+            return Err(faults::bad_loop(&scanner, at..end, names, values));
         }
         document.loops.push(LoopRecord {
             at: narrow(at),
@@ -321,69 +326,4 @@ impl Parser {
             ));
         }
     }
-}
-
-fn before_first_block(scanner: &Scanner<'_>, at: usize) -> Diagnostic {
-    let token = at..scanner.token_end(at);
-    scanner.fault(
-        token.clone(),
-        format!("`{}` before the first data block", shorten(scanner.slice(token))),
-        "data_NAME before all else but comments",
-        "write data_ with a name as the first line, or # before lines that are comments",
-    )
-}
-
-fn reserved(scanner: &Scanner<'_>, at: usize, end: usize) -> Diagnostic {
-    let found = format!("the reserved word `{}`", shorten(scanner.slice(at..end)));
-    scanner.fault(at..end, found, "a tag, loop_, save_NAME or data_NAME", "delete it, or quote it if it is a value")
-}
-
-/// A value without a tag before it. The value itself may be at fault, which then says more.
-fn stray_value(scanner: &Scanner<'_>, at: usize) -> Result<Diagnostic, Diagnostic> {
-    let (_, end) = scanner.value(at, Inside::Block)?;
-    let token = scanner.slice(at..end);
-    let mend = if number::is_lone_su(token) {
-        "delete the blank between the number and its s.u. in parentheses"
-    } else {
-        "put a tag before it, or quote the value before it if the two belong together"
-    };
-    Ok(scanner.fault(at..end, format!("the value `{}` without a tag", shorten(token)), "a tag before each value", mend))
-}
-
-/// A loop without tags or values, or cut short.
-fn bad_loop(scanner: &Scanner<'_>, keyword: std::ops::Range<usize>, names: usize, values: &[Span]) -> Diagnostic {
-    if names == 0 {
-        return scanner.fault(
-            keyword,
-            "loop_ without tags",
-            "tags behind loop_, then values",
-            "delete loop_ or add its tags",
-        );
-    }
-    if values.is_empty() {
-        return scanner.fault(
-            keyword,
-            format!("the loop has {names} tags and no values"),
-            format!("values in rows of {names}"),
-            "add the values, or delete the loop",
-        );
-    }
-    let split_su = values.iter().find(|v| v.form() == Form::Unquoted && number::is_lone_su(scanner.slice(v.content())));
-    let mend = match split_su {
-        Some(su) => format!(
-            "delete the blank before the s.u. `{}` in line {}",
-            shorten(scanner.slice(su.content())),
-            scanner.line(su.opening())
-        ),
-        None => format!(
-            "look for a value that is missing, or holds a blank and is not quoted; the last full row ends in line {}",
-            scanner.line(values[(values.len() / names * names).saturating_sub(1)].opening())
-        ),
-    };
-    scanner.fault(
-        keyword,
-        format!("the loop has {names} tags and {} values: {} left over", values.len(), values.len() % names),
-        format!("a multiple of {names} values"),
-        mend,
-    )
 }
