@@ -15,7 +15,7 @@ use crate::{Cell, CellError, SpaceGroup, reflections};
 const MOST_STEPS: usize = 1000;
 
 /// Largest ratio of two edges of a primitive cell: beyond it squares lose the digits that decide.
-const LARGEST_RATIO: f64 = 1e5;
+const LARGEST_RATIO: f64 = 1e4;
 
 /// How many of the first lines two lattices must share to be one.
 const LINES: usize = 30;
@@ -23,7 +23,7 @@ const LINES: usize = 30;
 /// Why a cell can't be reduced.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub enum ReductionError {
-    /// Two edges differ by more than a factor of 10⁵, or the cell is so skew that rounding decides.
+    /// Two edges differ by more than a factor of 10⁴, or the cell is so skew that rounding decides.
     Degenerate,
     /// The primitive cell is none.
     Cell(CellError),
@@ -33,7 +33,7 @@ impl fmt::Display for ReductionError {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         match self {
             Self::Degenerate => {
-                f.write_str("cell too long or too skew to be reduced; expected edges within a factor 1e5")
+                f.write_str("cell too long or too skew to be reduced; expected edges within a factor 1e4")
             }
             Self::Cell(error) => error.fmt(f),
         }
@@ -70,24 +70,26 @@ pub fn primitive_cell(cell: &Cell, centring: Centring) -> Result<Cell, CellError
     cell.transformed(primitive_vectors(centring))
 }
 
-/// Four vectors of sum zero, as multiples of the primitive axes, no two of which enclose an acute angle.
+/// Four vectors of sum zero, as multiples of the axes of the cell, no two of which enclose an acute angle.
+///
+/// The axes stay those of the cell as given: a primitive cell of a long centred one has nearly parallel edges, and what
+/// its angles lose does not come back.
 struct Superbase {
     vectors: [[f64; 3]; 4],
     metric: [[f64; 3]; 3],
 }
 
 impl Superbase {
-    /// Selling's reduction of a primitive cell.
-    fn reduced(primitive: &Cell) -> Result<Self, ReductionError> {
-        let edges = [primitive.a, primitive.b, primitive.c];
+    /// Selling's reduction.
+    fn reduced(cell: &Cell, centring: Centring) -> Result<Self, ReductionError> {
+        let edges = [cell.a, cell.b, cell.c];
         let (least, most) = edges.iter().fold((f64::MAX, 0.0_f64), |(l, m), e| (l.min(*e), m.max(*e)));
         if most / least > LARGEST_RATIO {
             return Err(ReductionError::Degenerate);
         }
-        let mut base = Self { vectors: [[0.0; 3]; 4], metric: primitive.metric() };
-        for i in 0..3 {
-            base.vectors[i][i] = 1.0;
-        }
+        let columns = primitive_vectors(centring);
+        let vector = |j: usize| std::array::from_fn(|i| columns[i][j]);
+        let mut base = Self { vectors: [vector(0), vector(1), vector(2), [0.0; 3]], metric: cell.metric() };
         base.shorten_pairs();
         base.vectors[3] = std::array::from_fn(|k| -(base.vectors[0][k] + base.vectors[1][k] + base.vectors[2][k]));
         let tolerance = 1e-12 * least * most;
@@ -138,8 +140,7 @@ fn product(metric: &[[f64; 3]; 3], u: [f64; 3], v: [f64; 3]) -> f64 {
 /// # Errors
 /// [`ReductionError`] for a cell too long or too skew.
 pub fn selling_lengths(cell: &Cell, centring: Centring) -> Result<[f64; 7], ReductionError> {
-    let primitive = primitive_cell(cell, centring)?;
-    let base = Superbase::reduced(&primitive)?;
+    let base = Superbase::reduced(cell, centring)?;
     let pair = |i: usize, j: usize| base.dot(i, i) + base.dot(j, j) + 2.0 * base.dot(i, j);
     let mut lengths =
         [base.dot(0, 0), base.dot(1, 1), base.dot(2, 2), base.dot(3, 3), pair(0, 1), pair(0, 2), pair(1, 2)];
@@ -196,17 +197,14 @@ fn first_lines(cell: &Cell, centring: Centring) -> Result<Vec<f64>, ReductionErr
 /// # Errors
 /// [`ReductionError`] for a cell too long or too skew.
 pub fn niggli_cell(cell: &Cell, centring: Centring) -> Result<Cell, ReductionError> {
-    let primitive = primitive_cell(cell, centring)?;
-    let base = Superbase::reduced(&primitive)?;
-    let columns = |vectors: &[[f64; 3]]| std::array::from_fn(|i| std::array::from_fn(|j| vectors[j][i]));
-    let compact = primitive.transformed(columns(&base.vectors[..3]))?;
-    let scale = compact.volume().powf(-2.0 / 3.0);
-    let metric = compact.metric();
-    let gram = Matrix3::from_fn(|i, j| metric[i][j] * scale);
-    let rows = gram.cholesky().ok_or(ReductionError::Degenerate)?.l();
-    let (_, transformation) = MoyoLattice::new(rows).niggli_reduce().map_err(|_| ReductionError::Degenerate)?;
-    let steps = std::array::from_fn(|i| std::array::from_fn(|j| f64::from(transformation[(i, j)])));
-    Ok(compact.transformed(steps)?)
+    let base = Superbase::reduced(cell, centring)?;
+    let gram = Matrix3::from_fn(|i, j| base.dot(i, j));
+    let scale = gram.determinant().cbrt().recip();
+    let rows = (gram * scale).cholesky().ok_or(ReductionError::Degenerate)?.l();
+    let (_, steps) = MoyoLattice::new(rows).niggli_reduce().map_err(|_| ReductionError::Degenerate)?;
+    let compact = Matrix3::from_fn(|i, j| base.vectors[j][i]);
+    let reduced = compact * steps.map(f64::from);
+    Ok(cell.transformed(std::array::from_fn(|i| std::array::from_fn(|j| reduced[(i, j)])))?)
 }
 
 #[cfg(test)]

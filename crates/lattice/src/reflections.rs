@@ -101,10 +101,12 @@ pub fn reflections(
             for l in if h == 0 && k == 0 { 1.max(l_low) } else { l_low }..=l_high {
                 let hkl = [h, k, l];
                 let q = quadratic(&metric, hkl);
-                if q < q_min || q > q_max || group.is_absent(hkl) {
+                if q < q_min || q > q_max || group.is_absent_by_centring(hkl) {
                     continue;
                 }
-                if let Some(multiplicity) = multiplicity_if_largest(group, hkl) {
+                // Most points have a larger equivalent, which is soon found; only the others are worth the glides.
+                let Some(multiplicity) = multiplicity_if_largest(group, hkl) else { continue };
+                if !group.is_absent_by_glide(hkl) {
                     found.push((q, Reflection { hkl, multiplicity, d: 1.0 / q.sqrt() }));
                 }
             }

@@ -104,6 +104,27 @@ impl SpaceGroup {
         }
     }
 
+    /// The group of highest symmetry and without glides on a lattice: what a bare lattice predicts. Hexagonal and trigonal P
+    /// lattices are one; rhombohedral ones are trigonal with R, on hexagonal axes; monoclinic ones have unique axis b.
+    ///
+    /// `None` where a system has no such centring (cubic C, say).
+    #[must_use]
+    pub fn of_lattice(system: CrystalSystem, centring: Centring) -> Option<Self> {
+        let axes = match (system, centring) {
+            (CrystalSystem::Trigonal, Centring::R) => "-3 m:H",
+            (_, Centring::R) => return None,
+            (CrystalSystem::Triclinic, Centring::P) => "-1",
+            (CrystalSystem::Monoclinic, Centring::P | Centring::A | Centring::C | Centring::I) => "1 2/m 1",
+            (CrystalSystem::Orthorhombic, _) => "m m m",
+            (CrystalSystem::Tetragonal, Centring::P | Centring::I) => "4/m m m",
+            (CrystalSystem::Trigonal | CrystalSystem::Hexagonal, Centring::P) => "6/m m m",
+            (CrystalSystem::Cubic, Centring::P | Centring::I | Centring::F) => "m -3 m",
+            _ => return None,
+        };
+        let xhm = format!("{centring} {axes}");
+        SETTINGS.iter().find(|setting| setting.xhm == xhm).map(Self::from_setting)
+    }
+
     /// The group without symmetry.
     #[must_use]
     pub fn p1() -> Self {
@@ -204,10 +225,17 @@ impl SpaceGroup {
     /// Source: International Tables B (2010), section 1.4.2 (systematic absences).
     #[must_use]
     pub fn is_absent(&self, hkl: [i32; 3]) -> bool {
-        let out_of_phase = |phase: i64| phase.rem_euclid(i64::from(TRANSLATION_UNIT)) != 0;
-        let dot = |t: &[i32; 3]| (0..3).map(|i| i64::from(hkl[i]) * i64::from(t[i])).sum::<i64>();
-        self.translations.iter().any(|t| out_of_phase(dot(t)))
-            || self.gliding.iter().any(|o| out_of_phase(o.phase_24ths(hkl)) && o.reflect(hkl) == hkl)
+        self.is_absent_by_centring(hkl) || self.is_absent_by_glide(hkl)
+    }
+
+    pub(crate) fn is_absent_by_centring(&self, hkl: [i32; 3]) -> bool {
+        let phase = |t: &[i32; 3]| (0..3).map(|i| i64::from(hkl[i]) * i64::from(t[i])).sum();
+        self.translations.iter().any(|t| is_fraction(phase(t)))
+    }
+
+    /// Of reflections that the centring lets pass.
+    pub(crate) fn is_absent_by_glide(&self, hkl: [i32; 3]) -> bool {
+        self.gliding.iter().any(|o| is_fraction(o.phase_24ths(hkl)) && o.reflect(hkl) == hkl)
     }
 
     /// Reflections equivalent under the Laue class, Friedel mates included, each once, the largest triple first.
@@ -218,6 +246,11 @@ impl SpaceGroup {
         all.dedup();
         all
     }
+}
+
+/// Whether a phase in 24ths of a turn is no whole turn.
+fn is_fraction(phase: i64) -> bool {
+    phase % i64::from(TRANSLATION_UNIT) != 0
 }
 
 /// `h R`.
@@ -236,5 +269,38 @@ impl Eq for SpaceGroup {}
 impl fmt::Display for SpaceGroup {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         f.write_str(self.xhm())
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::{Centring, CrystalSystem, SpaceGroup};
+
+    #[test]
+    fn the_fourteen_bravais_lattices_have_their_groups() {
+        // Outside: International Tables A (2002), Table 2.1.2.1: fourteen lattices; orthorhombic A and B, monoclinic A and I
+        // are further cells of them, and hexagonal P is that of trigonal groups too.
+        let mut names = Vec::new();
+        for system in [
+            CrystalSystem::Triclinic,
+            CrystalSystem::Monoclinic,
+            CrystalSystem::Orthorhombic,
+            CrystalSystem::Tetragonal,
+            CrystalSystem::Trigonal,
+            CrystalSystem::Hexagonal,
+            CrystalSystem::Cubic,
+        ] {
+            for centring in Centring::ALL {
+                if let Some(group) = SpaceGroup::of_lattice(system, centring) {
+                    assert_eq!(group.centring(), Some(centring), "{group}");
+                    assert!(group.system() == system || centring == Centring::P && system == CrystalSystem::Trigonal);
+                    assert!(!group.operations().iter().any(|o| o.translation.iter().any(|t| t % 4 != 0)), "{group}");
+                    names.push(group.short_symbol());
+                }
+            }
+        }
+        let expected =
+            "P-1 P2/m A2/m C2/m I2/m Pmmm Ammm Bmmm Cmmm Immm Fmmm P4/mmm I4/mmm P6/mmm R-3m P6/mmm Pm-3m Im-3m Fm-3m";
+        assert_eq!(names.join(" "), expected);
     }
 }
