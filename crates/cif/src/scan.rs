@@ -326,9 +326,9 @@ impl<'s> Scanner<'s> {
                 let found = format!("the value `{}` begins with $", shown());
                 Err(self.fault(range, found, "a value; $ is reserved", "quote the value"))
             }
-            Some(b'[' | b']') if !v2 && !is_old_bracket_text(token) => Err(self.looks_new(range, "[ and ]")),
+            Some(b'[' | b']') if !v2 && !is_old_bracket_text(token) => Err(self.looks_new(range, "[ or ]")),
             Some(b'{') if !v2 && matches!(token.as_bytes().get(1), Some(b'\'' | b'"')) => {
-                Err(self.looks_new(range, "{ and }"))
+                Err(self.looks_new(range, "{ and a quote"))
             }
             Some(b'd' | b'D' | b's' | b'S' | b'l' | b'L' | b'g' | b'G') if is_reserved(token) => {
                 let found = format!("the reserved word `{}` where a value belongs", shown());
@@ -343,9 +343,7 @@ impl<'s> Scanner<'s> {
         self.fault(
             range,
             found,
-            format!(
-                "no value that begins with {brackets} in CIF 1.1: the file looks like CIF 2.0 without its first line"
-            ),
+            format!("no value that begins with {brackets}: the file looks like CIF 2.0 without its first line"),
             "write #\\#CIF_2.0 as the first line, or quote the value",
         )
     }

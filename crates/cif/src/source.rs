@@ -152,8 +152,9 @@ impl Source {
         marks.push(mark);
         self.marks = marks;
         (long_lines > 0).then(|| {
+            let lines = if long_lines == 1 { "a line has".to_owned() } else { format!("{long_lines} lines have") };
             Diagnostic::new(
-                format!("{long_lines} lines have more than {LINE_LIMIT} characters, here the first"),
+                format!("{lines} more than {LINE_LIMIT} characters, the first from here on"),
                 format!("at most {LINE_LIMIT} characters in a line"),
                 "break the line at a blank; it was read nonetheless",
             )

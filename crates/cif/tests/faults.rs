@@ -76,7 +76,7 @@ fn a_line_of_ten_megabytes_is_read_or_refused_at_once() {
     let mut text = String::from("data_x\nloop_ _a\n");
     text.push_str(&"0.1() ".repeat(10_000_000 / 6));
     let document = parse(text.as_bytes(), "x.cif").unwrap();
-    assert!(document.warnings()[0].to_string().starts_with("x.cif:3:2049: 1 lines have more than 2048 characters"));
+    assert!(document.warnings()[0].to_string().starts_with("x.cif:3:2049: a line has more than 2048 characters"));
     // As one token, one string without end, one tag: the message shows its beginning only.
     for body in ["x", "_a '", "_", "_a 1 _a", "_a [", "_a $"] {
         let error = refused(format!("data_x\n{body}{}", "y".repeat(10_000_000)).as_bytes());
