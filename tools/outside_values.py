@@ -4,6 +4,7 @@ usage: python tools/outside_values.py          (from the project's root; needs t
 
     crates/instrument/tests/data/xraylib_lines.csv            line energies, against data/radiation.csv
     crates/structure-factor/tests/data/xraylib_f0.csv         200 form factors, against data/scattering_factors.csv
+    crates/structure-factor/tests/data/independent_fit_f0.csv another fit of all atoms and ions, against the same table
     crates/structure-factor/tests/data/atomic_weights.csv     two libraries, against data/atomic_masses.csv
     crates/structure-factor/tests/data/gemmi_dispersion.csv   500 random energies, against data/dispersion.csv
     crates/structure-factor/tests/data/xraylib_dispersion.csv 60 values of another theory, against data/dispersion.csv
@@ -14,6 +15,7 @@ import random
 import gemmi
 import numpy
 import xraylib
+from periodictable import cromermann
 
 HEADER = """\
 # {title}
@@ -65,6 +67,26 @@ def form_factors():
     )  # fmt: skip
 
 
+def independent_fit():
+    at = (0.0, 0.2, 0.5, 0.8, 1.2)
+    rows = []
+    for z in range(1, 99):
+        name = gemmi.Element(z).name
+        for charge in range(-3, 9):
+            ion = name + (f"{abs(charge)}{'+' if charge > 0 else '-'}" if charge else "")
+            try:
+                fit = cromermann.getCMformula(ion)
+            except KeyError:
+                continue
+            rows.append((name, charge, *(round(float(fit.atstol(s)), 4) for s in at)))
+    write(
+        "crates/structure-factor/tests/data/independent_fit_f0.csv", ["element", "charge", *(f"s{s}" for s in at)], rows,
+        title="Scattering factors by the five-Gaussian fit of Waasmaier & Kirfel (1995), Acta Cryst. A51, 416",
+        units="column s0.2 is s = 0.2 per angstrom; f0 electrons", source="periodictable 2.1.0, cromermann",
+        range="atoms and ions of H to Cf", checked="crates/structure-factor/tests/f0_table.rs",
+    )  # fmt: skip
+
+
 def weights():
     rows = []
     for z in range(1, 99):
@@ -108,5 +130,6 @@ def dispersion():
 if __name__ == "__main__":
     lines()
     form_factors()
+    independent_fit()
     weights()
     dispersion()

@@ -1,6 +1,7 @@
 //! Structures: a cell, a space group, and the atoms of its asymmetric unit.
 
 use lattice::{Cell, SpaceGroup};
+use values::Measured;
 
 /// An atom of the asymmetric unit.
 #[derive(Clone, Debug, PartialEq)]
@@ -29,13 +30,11 @@ pub enum Displacement {
     Anisotropic([f64; 6]),
 }
 
-/// Linear thermal expansion of a cell, the same along all axes.
+/// Linear thermal expansion along the axes of a cell.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Expansion {
-    /// `α = (1/a) da/dT` in K⁻¹.
-    pub per_kelvin: f64,
-    /// Standard uncertainty of α, in K⁻¹.
-    pub u_per_kelvin: f64,
+    /// `α = (1/a) da/dT` of a, b and c in K⁻¹, each with its standard uncertainty.
+    pub per_kelvin: [Measured; 3],
     /// Temperature that the cell belongs to, in °C.
     pub reference_celsius: f64,
 }
