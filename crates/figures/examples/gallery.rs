@@ -23,6 +23,12 @@ fn main() -> Result<(), Box<dyn std::error::Error>> {
     let three = [("Phase A, 62 %", 5.4113, 4, 1.0), ("Phase B, 30 %", 4.0494, 4, 0.5), ("Phase C, 8 %", 8.35, 2, 0.1)];
     write("pattern-three.svg", pattern(&three, false)?)?;
     write("pattern-dense.svg", pattern(&[("a large primitive cell", 34.0, 1, 1.0)], true)?)?;
+    let names =
+        ["Cerium dioxide, calcined at 900 °C, lot 7", "Gold", "Spinel", "Copper", "Rock salt", "Nickel", "Tungsten"];
+    let seven: Vec<_> =
+        (0..7).map(|i| (names[i], 3.6 + 0.31 * i as f64, 4 - 2 * (i as i32 % 2), 1.0 / (1.0 + i as f64))).collect();
+    write("pattern-seven.svg", pattern(&seven, true)?)?;
+    write("pattern-sticks.svg", sticks()?)?;
     write("indexed.svg", indexed(true)?)?;
     write("indexed-positions-only.svg", indexed(false)?)?;
     for (batches, limit) in [(8, Some(50.0)), (40, Some(80.0)), (200, Some(60.0)), (1, None)] {
@@ -142,6 +148,19 @@ fn drift(batches: u32, limit: Option<f64>) -> Result<String, figures::FigureErro
         risk: Some(0.05),
         points: &points,
     })
+}
+
+fn sticks() -> Result<String, figures::FigureError> {
+    let reflections = [cubic(5.4113, 4, 1.0), cubic(4.0494, 4, 0.5)];
+    let names = ["CeO₂ (invented strengths)", "Al (invented strengths)"];
+    let phases: Vec<PhaseCurve<'_>> = reflections
+        .iter()
+        .zip(names)
+        .map(|(reflections, name)| PhaseCurve { name: name.to_owned(), counts: &[], reflections })
+        .collect();
+    let mut figure = PatternFigure::new("Predicted reflections", CU_KA1_ANGSTROM, &[], &[], &phases);
+    figure.intensity_label = "Integrated intensity / counts × °".to_owned();
+    predicted_pattern(&figure)
 }
 
 /// Reflections of a cubic cell: `parity` 4 keeps unmixed indices, 2 an even sum, 1 all.

@@ -258,11 +258,14 @@ fn subtitle(figure: &DriftFigure<'_>) -> String {
 }
 
 fn caption(figure: &DriftFigure<'_>, names: &batches::Names) -> Vec<String> {
-    let each = |decision: DriftDecision| {
-        let n = figure.points.iter().filter(|point| point.decision == decision).count();
-        format!("{n} {}", decision.words())
-    };
-    let counts = DriftDecision::ALL.map(each).join(", ");
+    let number_of = |decision| figure.points.iter().filter(|point| point.decision == decision).count();
+    let counts: Vec<String> = DriftDecision::ALL
+        .into_iter()
+        .map(|decision| (number_of(decision), decision))
+        .filter(|&(n, _)| n > 0)
+        .map(|(n, decision)| format!("{n} {}", decision.words()))
+        .collect();
+    let counts = counts.join(", ");
     let mut text = format!("{}: {counts}.", count(figure.points.len(), "batch", "batches"));
     if names.every > 1 {
         text.push_str(&format!(" One in {} is named on the axis.", names.every));

@@ -62,6 +62,8 @@ impl Place {
 pub(crate) const GAP: f64 = 2.0;
 /// Distance of a label from what lies below it, px.
 const LIFT: f64 = 5.0;
+/// Longest upright leader above what lies below a label, px: beyond it the eye loses the line.
+const RAISE: f64 = 90.0;
 /// What stands so near to the foot of a leader belongs to it, px.
 const FOOT: f64 = 3.0;
 /// Room for a slanted leader, px.
@@ -77,6 +79,7 @@ pub(crate) fn place(frame: &Rect, wishes: &[Wish], skyline: impl Fn(f64, f64) ->
         .map(|wish| {
             let place = candidates(frame, wish, &skyline)
                 .into_iter()
+                .chain(above_others(frame, wish, &skyline, &taken))
                 .find(|place| taken.iter().all(|other| apart(place, other)))?;
             taken.push(place);
             Some(place)
@@ -87,7 +90,7 @@ pub(crate) fn place(frame: &Rect, wishes: &[Wish], skyline: impl Fn(f64, f64) ->
 /// Places of one label by rising distance from what it names: straight above, or aside with a slanted leader where
 /// something higher stands close.
 fn candidates(frame: &Rect, wish: &Wish, skyline: &impl Fn(f64, f64) -> f64) -> Vec<Place> {
-    let inner = Rect { left: frame.left + GAP, top: frame.top + GAP, right: frame.right - GAP, bottom: frame.bottom };
+    let inner = inner(frame);
     let mut places: Vec<(f64, Place)> = [0.0, -0.7, 0.7, -1.4, 1.4, -2.1, 2.1, -2.8, 2.8]
         .into_iter()
         .map(|shift: f64| {
@@ -110,6 +113,28 @@ fn candidates(frame: &Rect, wish: &Wish, skyline: &impl Fn(f64, f64) -> f64) -> 
         .collect();
     places.sort_by(|a, b| a.0.total_cmp(&b.0));
     places.into_iter().map(|(_, place)| place).collect()
+}
+
+/// Places straight above the point and above a label that is already there, the lowest first: the last resort of a line
+/// between two stronger ones.
+fn above_others(frame: &Rect, wish: &Wish, skyline: &impl Fn(f64, f64) -> f64, taken: &[Place]) -> Vec<Place> {
+    let (left, right) = (wish.x - 0.5 * wish.width, wish.x + 0.5 * wish.width);
+    let lowest = skyline(left, right).min(wish.y) - LIFT;
+    let crowding = taken.iter().filter(|other| other.rect.left < right + GAP && left - GAP < other.rect.right);
+    let mut places: Vec<Place> = crowding
+        .map(|other| lowest.min(other.rect.top - GAP - 0.1))
+        .filter(|bottom| lowest - bottom <= RAISE)
+        .map(|bottom| Rect { left, top: bottom - wish.height, right, bottom })
+        .filter(|rect| inner(frame).holds(rect))
+        .map(|rect| Place { rect, foot: (wish.x, wish.y) })
+        .collect();
+    places.sort_by(|a, b| b.rect.bottom.total_cmp(&a.rect.bottom));
+    places
+}
+
+/// Where labels may stand.
+fn inner(frame: &Rect) -> Rect {
+    Rect { left: frame.left + GAP, top: frame.top + GAP, right: frame.right - GAP, bottom: frame.bottom }
 }
 
 /// Whether neither label nor leader of one place meets the label of the other. Leaders may share their foot: lines that

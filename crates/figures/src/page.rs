@@ -47,6 +47,8 @@ pub struct PageSection {
     pub paragraphs: Vec<String>,
     /// The command that the section stands for.
     pub command: Option<String>,
+    /// What the command printed, with its line ends and blanks.
+    pub output: String,
     /// Tables.
     pub tables: Vec<PageTable>,
     /// Pictures.
@@ -148,6 +150,7 @@ fn section((index, section): (usize, &PageSection)) -> Value {
         heading => clean(&section.heading),
         paragraphs => cleaned(&section.paragraphs),
         command => section.command.as_deref().map(clean).unwrap_or_default(),
+        output => clean(&section.output),
         tables,
         pictures,
         links,

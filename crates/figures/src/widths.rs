@@ -136,6 +136,21 @@ mod tests {
     }
 
     #[test]
+    fn each_width_is_the_larger_of_the_two_fonts_rounded_up() {
+        let text = include_str!("../tests/data/advance_widths.csv");
+        let table = values::Table::parse(text, "advance_widths.csv").expect("a table with its origin");
+        assert_eq!(table.rows.len(), REGULAR.len());
+        for row in &table.rows {
+            let [code, liberation, dejavu, liberation_bold, dejavu_bold] =
+                [0, 1, 2, 3, 4].map(|column| row.fields[column].parse::<u16>().expect("a number"));
+            let bound = |a: u16, b: u16| (f64::from(a.max(b)) * 1000.0 / 2048.0).ceil();
+            let c = char::from(u8::try_from(code).expect("ASCII"));
+            assert!((per_mille(c, false) - bound(liberation, dejavu)).abs() < 0.5, "{c}");
+            assert!((per_mille(c, true) - bound(liberation_bold, dejavu_bold)).abs() < 0.5, "{c} bold");
+        }
+    }
+
+    #[test]
     fn bold_is_at_least_as_wide_as_regular_except_the_at_sign() {
         for c in (' '..='~').filter(|&c| c != '@') {
             assert!(per_mille(c, true) >= per_mille(c, false), "{c}");

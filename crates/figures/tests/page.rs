@@ -14,6 +14,7 @@ fn section(heading: &str) -> PageSection {
     PageSection {
         heading: heading.to_owned(),
         paragraphs: vec![format!("About {heading}")],
+        output: format!("printed {heading}\n  kept"),
         command: Some(format!("latticewright predict {heading}")),
         tables: vec![PageTable {
             caption: format!("Table of {heading}"),
@@ -58,6 +59,7 @@ fn text_that_looks_like_markup_or_template_is_shown_as_text() {
     let text_of = |tag: &str| document.descendants().find(|node| node.has_tag_name(tag)).and_then(|node| node.text());
     assert_eq!(text_of("h2"), Some(shown.as_str()));
     assert_eq!(text_of("code"), Some(format!("latticewright predict {shown}").as_str()));
+    assert_eq!(text_of("samp"), Some(format!("printed {shown}\n  kept").as_str()));
     let cell = document.descendants().filter(|node| node.has_tag_name("td")).nth(2).and_then(|node| node.text());
     assert_eq!(cell, Some(shown.as_str()));
 }
