@@ -15,7 +15,7 @@
 //! Sources: JCGM 106:2012 (guarded acceptance and rejection); Holm, Scand. J. Statist. 6 (1979) 65; Berger, Technometrics
 //! 24 (1982) 295 (intersection–union tests). The papers are cited from memory; the rates are measured in the tests.
 
-use statrs::distribution::{ContinuousCDF, Normal, StudentsT};
+use statrs::distribution::{ChiSquared, ContinuousCDF, Normal, StudentsT};
 
 /// What the difference allows to say.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
@@ -72,6 +72,19 @@ impl Tails {
         self.student.as_ref().map_or_else(|| self.normal.sf(x), |t| t.sf(x))
     }
 
+    /// Estimated over true s.u. at equally probable points; one point, 1, where u is known.
+    fn spread_of_u(&self) -> Vec<f64> {
+        const POINTS: i32 = 64;
+        let chi2 = self.student.as_ref().and_then(|t| ChiSquared::new(t.freedom()).ok());
+        chi2.map_or_else(
+            || vec![1.0],
+            |chi2| {
+                let at = |i: i32| chi2.inverse_cdf((f64::from(i) + 0.5) / f64::from(POINTS));
+                (0..POINTS).map(|i| (at(i) / chi2.freedom()).sqrt()).collect()
+            },
+        )
+    }
+
     /// x with `P(X > x) = tail`, for 0 < tail < 1.
     #[must_use]
     pub fn upper_quantile(&self, tail: f64) -> f64 {
@@ -107,10 +120,26 @@ pub fn acceptance(limit: f64, u: f64, risk: f64, tails: &Tails) -> f64 {
 }
 
 /// The true change that is called drifted with probability `power`: `P(|δ| > c | true = x) = power`.
+///
+/// Where u was estimated, c varies with it from measurement to measurement; the rate is then the mean over the distribution
+/// of u, √(χ²/dof) about the present one.
 #[must_use]
-pub fn detectable(c: f64, u: f64, power: f64, tails: &Tails) -> f64 {
-    let high = c + u * tails.upper_quantile(1.0 - power).max(0.0);
-    bisect(0.0, high, |x| rate_beyond(c, x, u, tails) < power)
+pub fn detectable(limit: f64, u: f64, risk: f64, power: f64, tails: &Tails) -> f64 {
+    let c = critical(limit, u, risk, tails);
+    let normal = Tails::new(f64::INFINITY);
+    let spread = tails.spread_of_u();
+    // c is nearly linear in u.
+    let slope = if spread.len() > 1 {
+        (critical(limit, 1.05 * u, risk, tails) - critical(limit, 0.95 * u, risk, tails)) / (0.1 * u)
+    } else {
+        0.0
+    };
+    let rate = |x: f64| {
+        let sum: f64 = spread.iter().map(|s| rate_beyond(c + slope * (s - 1.0) * u, x, u, &normal)).sum();
+        sum / spread.len() as f64
+    };
+    let high = c + 2.0 * u * tails.upper_quantile(1.0 - power).abs() + 4.0 * u;
+    bisect(0.0, high, |x| rate(x) < power)
 }
 
 /// Where `below` turns from true to false in low..high.
@@ -144,7 +173,7 @@ pub struct Verdict {
     pub critical: f64,
     /// |δ| below which it is within; never when negative.
     pub acceptance: f64,
-    /// Change found with 80 % power when only this parameter changes.
+    /// True change found with 80 % power when only this parameter changes (first step of Holm's procedure).
     pub detectable: f64,
     /// `P(|X| > |δ| | true = limit)`, before Holm's correction.
     pub p_value: f64,
@@ -167,7 +196,6 @@ pub fn decide(tested: &[Tested], risk: f64) -> Vec<Verdict> {
         let t = &tested[i];
         let level = |step: usize| risk / (m - step) as f64;
         let c = critical(t.limit, t.u, level(stopped_at.unwrap_or(step)), &t.tails);
-        let first_c = if m > 1 { critical(t.limit, t.u, level(0), &t.tails) } else { c };
         let beyond = stopped_at.is_none() && t.delta.abs() > c;
         if !beyond && stopped_at.is_none() {
             stopped_at = Some(step);
@@ -184,7 +212,7 @@ pub fn decide(tested: &[Tested], risk: f64) -> Vec<Verdict> {
             decision,
             critical: c,
             acceptance,
-            detectable: detectable(first_c, t.u, POWER, &t.tails),
+            detectable: detectable(t.limit, t.u, level(0), POWER, &t.tails),
             p_value: p_values[i],
         });
     }
