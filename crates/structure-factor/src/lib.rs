@@ -9,11 +9,17 @@
 //! Elsewhere: multiplicity, Lorentz–polarisation (`pattern`); the syntax of CIF (`cif`); symmetry (`lattice`).
 
 mod block_sum;
+mod checks;
 mod content;
 pub mod direct_sum;
+mod displacement;
+mod elements;
 mod error;
 pub mod expand;
 mod exponential;
+mod formula;
+mod from_cif;
+mod from_toml;
 mod model;
 mod structure;
 pub mod tables;
