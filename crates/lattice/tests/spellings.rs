@@ -165,6 +165,23 @@ fn hall_symbols_are_read_as_old_files_write_them() {
     }
 }
 
+#[test]
+fn a_diagonal_axis_lies_across_the_axis_before_it() {
+    // Outside: International Tables B (2010), Table A1.4.2.5: behind x, 2' is along b - c and 2" along b + c; behind z,
+    // along a - b and a + b. moyo 0.22 has the same rule; gemmi takes z always.
+    for (hall, operation) in [
+        ("P 2x 2'", "-x,-z,-y"),
+        ("P 2x 2\"", "-x,z,y"),
+        ("P 2y 2'", "-z,-y,-x"),
+        ("P 2 2'", "-y,-x,-z"),
+        ("P 2 2\"", "y,x,-z"),
+    ] {
+        let group = SpaceGroup::from_hall(hall).unwrap();
+        assert_eq!(group.operations().len(), 4, "{hall}");
+        assert!(group.operations().contains(&Operation::parse(operation).unwrap()), "{hall}");
+    }
+}
+
 fn statement(operations: &[&str], hall: &str, hm: &str, number: u16) -> SymmetryStatement {
     let given = |text: &str| (!text.is_empty()).then(|| text.to_owned());
     SymmetryStatement {
