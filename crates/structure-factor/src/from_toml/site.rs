@@ -86,7 +86,10 @@ fn atom(
     };
     let xyz = site.get("xyz").ok_or_else(|| missing("xyz", "add it, such as `xyz = [0, 0, 0.25]`"))?;
     // Fractions far outside of the cell are Å by mistake.
-    let position = reader.numbers(xyz, "xyz", |_| -4.0..=4.0)?;
+    let position = reader.numbers(xyz, "xyz", |_| -4.0..=4.0).map_err(|wrong| Diagnostic {
+        mend: "give fractions of the cell edges, not Å: [0, 0.25, \"1/3\"]".to_owned(),
+        ..wrong
+    })?;
     let occupancy = site.get("occupancy").map_or(Ok(1.0), |value| reader.number(value, "occupancy", 0.0..=1.0))?;
     let label = match site.get("label") {
         Some(value) => reader.text(value, "label")?.to_owned(),
