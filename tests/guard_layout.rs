@@ -1,5 +1,7 @@
 //! Guards of the layout: arrows between crates, files that would be forgotten, tables without an origin.
 
+#![allow(clippy::unwrap_used, reason = "a test may stop where it can't read")]
+
 use std::collections::{BTreeMap, BTreeSet};
 use std::path::{Path, PathBuf};
 use std::process::Command;

@@ -1,5 +1,7 @@
 //! Guard: no type of a dependency stands in a signature between crates, so that versions of dependencies stay private.
 
+#![allow(clippy::unwrap_used, reason = "a guard may stop where it can't read")]
+
 use std::collections::BTreeSet;
 use std::path::{Path, PathBuf};
 
@@ -26,6 +28,8 @@ const PRIVATE: [&str; 14] = [
 #[derive(Default)]
 struct Signatures {
     imported: BTreeSet<String>,
+    /// Types of this file that no other crate can name: their methods are no signatures between crates.
+    hidden: BTreeSet<String>,
     found: Vec<String>,
     public: bool,
 }
@@ -75,6 +79,15 @@ impl<'ast> Visit<'ast> for Signatures {
         }
     }
 
+    fn visit_item_impl(&mut self, item: &'ast syn::ItemImpl) {
+        if let syn::Type::Path(path) = &*item.self_ty
+            && path.path.segments.last().is_some_and(|s| self.hidden.contains(&s.ident.to_string()))
+        {
+            return;
+        }
+        syn::visit::visit_item_impl(self, item);
+    }
+
     fn visit_path(&mut self, path: &'ast syn::Path) {
         if self.public {
             let first = path.segments.first().map(|s| s.ident.to_string()).unwrap_or_default();
@@ -121,10 +134,17 @@ impl<'ast> Visit<'ast> for Signatures {
 fn offences(source: &str) -> Vec<String> {
     let file = syn::parse_file(source).unwrap();
     let mut look = Signatures::default();
-    // Imports first: they may stand anywhere in a file.
+    // Imports and hidden types first: they may stand anywhere in a file.
     for item in &file.items {
-        if let syn::Item::Use(item) = item {
-            look.visit_item_use(item);
+        match item {
+            syn::Item::Use(item) => look.visit_item_use(item),
+            syn::Item::Struct(item) if !matches!(item.vis, syn::Visibility::Public(_)) => {
+                look.hidden.insert(item.ident.to_string());
+            }
+            syn::Item::Enum(item) if !matches!(item.vis, syn::Visibility::Public(_)) => {
+                look.hidden.insert(item.ident.to_string());
+            }
+            _ => {}
         }
     }
     look.found.clear();
@@ -176,6 +196,7 @@ fn the_guard_sees_a_dependency_in_each_kind_of_signature() {
     for right in [
         "fn f() -> nalgebra::DMatrix<f64> { todo!() }",
         "pub fn f() -> f64 { nalgebra::DMatrix::<f64>::zeros(1, 1)[0] }",
+        "use toml::Value; pub(super) struct R; impl R { pub fn f(&self) -> Option<Value> { None } }",
         "pub(crate) fn f(m: &nalgebra::DMatrix<f64>) {}",
         "#[cfg(test)] mod tests { pub fn f() -> nalgebra::DMatrix<f64> { todo!() } }",
     ] {

@@ -191,7 +191,7 @@ impl Reader<'_> {
                 return Err(Diagnostic::new(
                     format!("the batch `{}` again, as in row {first}", excerpt(&id)),
                     "each batch once",
-                    "keep the row that holds",
+                    "keep the row that is right",
                 )
                 .at(row.place(self.file, self.id, 0)));
             }

@@ -1,0 +1,68 @@
+//! Human tables, and numbers in them.
+
+use comfy_table::{CellAlignment, Table, presets::NOTHING};
+
+/// A plain table: a rule under the header, columns to the right unless named in `left`.
+pub fn table(header: &[&str], left: &[usize], rows: &[Vec<String>]) -> String {
+    let mut table = Table::new();
+    table.load_style(NOTHING);
+    table.set_header(header.to_vec());
+    for row in rows {
+        table.add_row(row.clone());
+    }
+    for (index, column) in table.column_iter_mut().enumerate() {
+        column.set_cell_alignment(if left.contains(&index) { CellAlignment::Left } else { CellAlignment::Right });
+        column.set_padding((0, 2));
+    }
+    let mut text = String::new();
+    for (index, line) in table.lines().enumerate() {
+        text.push_str(line.trim_end());
+        text.push('\n');
+        if index == 0 {
+            text.push_str(&"─".repeat(line.trim_end().chars().count()));
+            text.push('\n');
+        }
+    }
+    text
+}
+
+/// `h k l` with blanks only where a minus or two digits need them.
+pub fn hkl(hkl: [i32; 3]) -> String {
+    if hkl.iter().all(|x| (0..10).contains(x)) {
+        hkl.iter().map(i32::to_string).collect()
+    } else {
+        hkl.iter().map(i32::to_string).collect::<Vec<_>>().join(" ")
+    }
+}
+
+/// A field of a CSV row, quoted where it must be.
+pub fn csv_field(text: &str) -> String {
+    if text.contains([',', '"', '\n', '\r']) { format!("\"{}\"", text.replace('"', "\"\"")) } else { text.to_owned() }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::{csv_field, hkl, table};
+
+    #[test]
+    fn indices_are_parted_only_where_they_must_be() {
+        assert_eq!(hkl([1, 1, 1]), "111");
+        assert_eq!(hkl([1, -1, 0]), "1 -1 0");
+        assert_eq!(hkl([12, 0, 0]), "12 0 0");
+    }
+
+    #[test]
+    fn fields_with_commas_and_quotes_are_quoted() {
+        assert_eq!(csv_field("a"), "a");
+        assert_eq!(csv_field("a,\"b\""), "\"a,\"\"b\"\"\"");
+    }
+
+    #[test]
+    fn a_table_aligns_its_columns() {
+        let text =
+            table(&["hkl", "d / Å"], &[0], &[vec!["111".into(), "3.1356".into()], vec!["220".into(), "12.5".into()]]);
+        let lines: Vec<&str> = text.lines().collect();
+        assert_eq!(lines.len(), 4);
+        assert_eq!(lines[2].len(), lines[3].len());
+    }
+}
