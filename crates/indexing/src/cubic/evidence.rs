@@ -1,0 +1,232 @@
+//! Refinement of one lattice and its evidence against lines that fall at random.
+//!
+//! Each line i is either one of the N lines that the lattice calculates up to the last observed one, or foreign:
+//!
+//! `p_i = (1 − ε) w_i/Σw · Normal(2θ_i; 2θ(N_i, a) + z, κ u_i) + ε g(2θ_i)`, ε = 0.1,
+//!
+//! w = m^¼ the visibility of a line of multiplicity m, the sum over the N lines,
+//! g the density of random lines (uniform in Q^(3/2); half of it at the place of a satellite, where one is suspected). A
+//! calculated line explains one observed line: of two, the nearer. w/Σw, about 1/N, is the price of possible lines, and with it that of lines
+//! not seen. `ln L = Σ ln(p_i/g)`. The edge has a prior uniform in ln a, the zero a normal one; both are integrated in the
+//! normal approximation, and the scale κ (or, where no s.u. are stated, the s.u. itself) is summed over a grid with its prior:
+//!
+//! `ln E = ln Σ_κ P(κ) exp[ln L + ln p(ln a) + ln p(z) + ½(2 ln 2π + ln det C)]`.
+
+use super::CubicOptions;
+use super::candidates::Candidate;
+use super::lines::{Line, Lines};
+use super::sequence::{Centring, Sequence};
+
+/// Share of foreign lines.
+pub(crate) const FOREIGN: f64 = 0.1;
+/// Steps of the reweighted fit at each scale.
+const STEPS: usize = 4;
+
+/// One line under one lattice.
+#[derive(Clone, Copy, Debug, Default)]
+pub(crate) struct Match {
+    /// Which calculated line (N for a cubic lattice); 0 for none.
+    pub(crate) line: usize,
+    /// Share of the calculated line among all that may be seen.
+    pub(crate) share: f64,
+    /// Observed minus calculated (zero included in the calculated), degrees.
+    pub(crate) difference_deg: f64,
+    /// Probability that the line belongs to the lattice.
+    pub(crate) weight: f64,
+}
+
+/// A refined lattice.
+#[derive(Clone, Debug)]
+pub(crate) struct Refined {
+    pub(crate) centring: Centring,
+    pub(crate) a: f64,
+    pub(crate) zero_deg: f64,
+    /// ln E, in nats over random lines, without the priors of centring and system.
+    pub(crate) ln_evidence: f64,
+    /// One per line of the sorted list.
+    pub(crate) lines: Vec<Match>,
+    /// Calculated lines up to the last observed one.
+    pub(crate) calculated: usize,
+    /// The scale that carries most evidence.
+    pub(crate) scale: f64,
+}
+
+impl Refined {
+    /// Lines that belong to the lattice.
+    pub(crate) fn used(&self) -> usize {
+        self.lines.iter().filter(|hit| hit.weight > 0.5).count()
+    }
+
+    /// Foreign lines: those that do not, satellites aside, and aside lines within five s.u. of a calculated one, which may be
+    /// poorly measured lines of the lattice.
+    pub(crate) fn foreign(&self, lines: &Lines) -> usize {
+        let counts = |hit: &Match, line: &Line| {
+            let near = hit.line != 0 && hit.difference_deg.abs() < 5.0 * lines.sigma_deg(line, self.scale);
+            hit.weight <= 0.5 && !near && !lines.is_satellite(line)
+        };
+        self.lines.iter().zip(&lines.list).filter(|(hit, line)| counts(hit, line)).count()
+    }
+}
+
+/// Scales of the s.u. with the logarithm of their prior weight.
+pub(crate) fn scales(stated: bool) -> Vec<(f64, f64)> {
+    // Stated s.u. may be too small by a common factor, never too large: half of a log-normal of width ln 1.5.
+    // Without: log-normal around 0.012° with width ln 2, the range of laboratory work (common practice, no source).
+    let (grid, centre, width): (&[f64], f64, f64) = if stated {
+        (&[1.0, 1.35, 1.8, 2.5, 3.5], 1.0, 1.5f64.ln())
+    } else {
+        (&[0.002, 0.004, 0.007, 0.012, 0.02, 0.035], 0.012, 2f64.ln())
+    };
+    let weight = |x: f64| (-0.5 * ((x / centre).ln() / width).powi(2)).exp();
+    let sum: f64 = grid.iter().map(|x| weight(*x)).sum();
+    grid.iter().map(|x| (*x, (weight(*x) / sum).ln())).collect()
+}
+
+struct Step {
+    ln_a: f64,
+    zero: f64,
+    ln_evidence: f64,
+    lines: Vec<Match>,
+}
+
+/// Refines a lattice from start values and integrates its evidence.
+pub(crate) fn refine(
+    lines: &Lines,
+    start: &Candidate,
+    sequence: &Sequence,
+    scales: &[(f64, f64)],
+    options: &CubicOptions,
+) -> Option<Refined> {
+    let mut best: Option<(f64, f64, Step)> = None;
+    let mut terms = Vec::with_capacity(scales.len());
+    let (mut ln_a, mut zero) = (-0.5 * start.inverse_a2.ln(), start.zero_deg);
+    // From the widest scale down: each start is the end of the step before.
+    for &(scale, ln_prior) in scales.iter().rev() {
+        let step = at_scale(lines, sequence, ln_a, zero, scale, options)?;
+        (ln_a, zero) = (step.ln_a, step.zero);
+        let term = step.ln_evidence + ln_prior;
+        terms.push(term);
+        if best.as_ref().is_none_or(|(most, _, _)| term > *most) {
+            best = Some((term, scale, step));
+        }
+    }
+    let (most, scale, step) = best?;
+    let ln_evidence = most + terms.iter().map(|term| (term - most).exp()).sum::<f64>().ln();
+    let a = step.ln_a.exp();
+    let calculated = calculated(lines, sequence, a);
+    Some(Refined {
+        centring: start.centring,
+        a,
+        zero_deg: step.zero,
+        ln_evidence,
+        lines: step.lines,
+        calculated,
+        scale,
+    })
+}
+
+/// Calculated lines from the start of the scan to the last observed line; one at least.
+fn calculated(lines: &Lines, sequence: &Sequence, a: f64) -> usize {
+    let up_to = sequence.count(lines.q_last * a * a * (1.0 + 1e-3));
+    up_to.saturating_sub(sequence.count(lines.q_start * a * a)).max(1) as usize
+}
+
+fn at_scale(
+    lines: &Lines,
+    sequence: &Sequence,
+    mut ln_a: f64,
+    mut zero: f64,
+    scale: f64,
+    options: &CubicOptions,
+) -> Option<Step> {
+    let mut assigned = vec![Match::default(); lines.list.len()];
+    let prior = 1.0 / (options.zero_deg.u * options.zero_deg.u);
+    let mean = options.zero_deg.value;
+    let mut normal = [0.0; 3];
+    for _ in 0..STEPS {
+        assign(lines, sequence, ln_a, zero, scale, &mut assigned)?;
+        // Unknowns: δ ln a and δ z. d(2θ)/d ln a = −2 tan θ (180/π) degrees; d(2θ)/dz = 1.
+        let (mut aa, mut az, mut zz, mut ra, mut rz) = (0.0, 0.0, prior, 0.0, (mean - zero) * prior);
+        for (line, hit) in lines.list.iter().zip(&assigned).filter(|(_, hit)| hit.weight > 0.0) {
+            let w = hit.weight / lines.sigma_deg(line, scale).powi(2);
+            let da = slope_ln_a(line.two_theta_deg - zero);
+            aa += w * da * da;
+            az += w * da;
+            zz += w;
+            ra += w * da * hit.difference_deg;
+            rz += w * hit.difference_deg;
+        }
+        let det = aa * zz - az * az;
+        if !(det > 0.0 && det.is_finite()) {
+            return None;
+        }
+        ln_a += (zz * ra - az * rz) / det;
+        zero += (aa * rz - az * ra) / det;
+        normal = [aa, az, zz];
+    }
+    let ln_likelihood = assign(lines, sequence, ln_a, zero, scale, &mut assigned)?;
+    let [aa, az, zz] = normal;
+    let two_pi = (2.0 * std::f64::consts::PI).ln();
+    let ln_prior_a = -(options.largest_a / options.smallest_a).ln().ln();
+    let ln_prior_zero = -0.5 * ((zero - mean).powi(2) * prior + two_pi - prior.ln());
+    let ln_evidence = ln_likelihood + ln_prior_a + ln_prior_zero + two_pi - 0.5 * (aa * zz - az * az).ln();
+    Some(Step { ln_a, zero, ln_evidence, lines: assigned })
+}
+
+/// `d(2θ)/d ln a = −2 tan θ`, in degrees.
+fn slope_ln_a(two_theta_deg: f64) -> f64 {
+    -2.0 * (two_theta_deg.to_radians() / 2.0).tan().to_degrees()
+}
+
+/// Gives each line its nearest calculated line and the probability that it belongs there; returns ln L.
+fn assign(lines: &Lines, sequence: &Sequence, ln_a: f64, zero: f64, scale: f64, assigned: &mut [Match]) -> Option<f64> {
+    let a = ln_a.exp();
+    let half = lines.wavelength_angstrom / 2.0;
+    let (after, last) = (lines.q_start * a * a, lines.q_last * a * a * (1.0 + 1e-3));
+    for (line, hit) in lines.list.iter().zip(assigned.iter_mut()) {
+        let theta = (line.two_theta_deg - zero).to_radians() / 2.0;
+        let x = (theta.sin() / half * a).powi(2);
+        *hit = Match::default();
+        if let Some(n) = sequence.nearest(x) {
+            let sine = (n as f64).sqrt() * half / a;
+            if sine < 1.0 {
+                hit.line = n;
+                hit.share = sequence.share(n, after, last);
+                hit.difference_deg = line.two_theta_deg - zero - 2.0 * sine.asin().to_degrees();
+            }
+        }
+    }
+    likelihood(lines, scale, assigned)
+}
+
+/// Lets a calculated line explain one observed line only, weighs each line and returns ln L.
+pub(crate) fn likelihood(lines: &Lines, scale: f64, assigned: &mut [Match]) -> Option<f64> {
+    // One calculated line explains one observed line.
+    for i in 1..assigned.len() {
+        let (before, after) = assigned.split_at_mut(i);
+        let (left, right) = (&mut before[i - 1], &mut after[0]);
+        if left.line != 0 && left.line == right.line {
+            if left.difference_deg.abs() <= right.difference_deg.abs() {
+                // The loser keeps its N for the next comparison only if it is the winner; three at one line are rare.
+                right.line = 0;
+            } else {
+                left.line = 0;
+            }
+        }
+    }
+    let mut ln_likelihood = 0.0;
+    for (line, hit) in lines.list.iter().zip(assigned.iter_mut()) {
+        let sigma = lines.sigma_deg(line, scale);
+        let foreign_density = lines.foreign_per_deg(line, scale);
+        let z = hit.difference_deg / sigma;
+        let belongs = if hit.line == 0 {
+            0.0
+        } else {
+            (1.0 - FOREIGN) * hit.share * (-0.5 * z * z).exp() / (sigma * (2.0 * std::f64::consts::PI).sqrt())
+        };
+        let total = belongs + FOREIGN * foreign_density;
+        hit.weight = belongs / total;
+        ln_likelihood += (total / foreign_density).ln();
+    }
+    ln_likelihood.is_finite().then_some(ln_likelihood)
+}

@@ -1,0 +1,322 @@
+//! The readings as they are reported: final fit, figures of merit, ratio table, and the sentences.
+
+use super::evidence::Refined;
+use super::lines::Lines;
+use super::sequence::{Centring, Sequence, indices};
+use super::twins::{Twin, TwinKind, exact_twins};
+use super::weigh::{Weighed, Weighing};
+use super::{CubicAnswer, CubicOptions, LineOfReading, MissingLine, Reading, Status};
+use crate::fit::{FitOptions, IndexedLine, fit_cell};
+use crate::merit::{Indexed, merit};
+use lattice::{AxisSystem, Cell};
+use values::{Peak, TwoTheta, Wavelength};
+
+/// Calculated lines that a diamond-like motif must hide, and observed ones, before it is named.
+const MOTIF_LINES: usize = 3;
+
+pub(crate) fn answer(
+    peaks: &[Peak],
+    lines: &Lines,
+    sequences: &[(Centring, Sequence); 3],
+    weighed: &Weighing,
+    wavelength: Wavelength,
+    options: &CubicOptions,
+) -> CubicAnswer {
+    let mut readings: Vec<Reading> = Vec::with_capacity(weighed.readings.len());
+    for one in &weighed.readings {
+        if let Some((_, sequence)) = sequences.iter().find(|(centring, _)| *centring == one.lattice.centring)
+            && let Some(mut reading) = reading(lines, sequence, one, wavelength, options)
+        {
+            reading.rank = readings.len() + 1;
+            readings.push(reading);
+        }
+    }
+    name_partners(&mut readings, weighed);
+    let found = weighed.probability_none < 0.5 && !readings.is_empty();
+    let ambiguous = (found && weighed.ambiguous).then(|| why_ambiguous(&readings, weighed)).flatten();
+    CubicAnswer {
+        verdict: verdict(&readings, weighed, found, ambiguous.is_some()),
+        notes: notes(peaks.len(), lines, options),
+        probability_none: if readings.is_empty() { 1.0 } else { weighed.probability_none },
+        readings,
+        found,
+        ambiguous,
+    }
+}
+
+fn reading(
+    lines: &Lines,
+    sequence: &Sequence,
+    weighed: &Weighed,
+    wavelength: Wavelength,
+    options: &CubicOptions,
+) -> Option<Reading> {
+    let lattice = &weighed.lattice;
+    let used: Vec<usize> = (0..lines.list.len()).filter(|i| lattice.lines[*i].weight > 0.5).collect();
+    let indexed: Vec<IndexedLine> = used
+        .iter()
+        .map(|&i| IndexedLine {
+            hkl: indices(lattice.lines[i].line as u32, lattice.centring).first().copied().unwrap_or_default(),
+            two_theta: TwoTheta::from_deg(lines.list[i].two_theta_deg),
+            u_deg: lines.list[i].u_deg.filter(|_| lines.stated),
+        })
+        .collect();
+    let start = Cell::cubic(lattice.a).ok()?;
+    let fit_options = FitOptions { zero_deg: Some(options.zero_deg), displacement: None };
+    let fit = fit_cell(&indexed, AxisSystem::Cubic, &start, wavelength, &fit_options).ok()?;
+    let a = fit.cell_parameters[0];
+    let zero_deg = fit.parameter("zero_deg")?;
+    let position = |n: u32| -> Option<f64> {
+        let two_theta = TwoTheta::from_d(a.value / f64::from(n).sqrt(), wavelength)?;
+        Some(two_theta.deg() + zero_deg.value)
+    };
+    let rows: Vec<LineOfReading> = (0..lines.list.len()).map(|i| row(lines, lattice, i, &position)).collect();
+    let missing = missing_lines(lines, lattice.centring, sequence, a.value, &rows, &position);
+    let merit = figures(lines, sequence, a.value, zero_deg.value, &rows, wavelength);
+    let motif = (lattice.centring == Centring::F).then(|| diamond_motif(&rows, &missing)).flatten();
+    let mut notes = Vec::new();
+    if weighed.halved {
+        notes.push(
+            "all lines with odd indices are absent: the two kinds of atoms would have to scatter alike, as K and Cl in KCl"
+                .to_owned(),
+        );
+    }
+    if fit.u_factor > 1.0 {
+        notes.push(format!(
+            "the stated s.u. of the lines were multiplied by {:.2}, after their residuals",
+            fit.u_factor
+        ));
+    }
+    Some(Reading {
+        rank: 0,
+        centring: lattice.centring,
+        a,
+        volume: fit.volume,
+        zero_deg,
+        covariance: [[fit.covariance[0][0], fit.covariance[0][1]], [fit.covariance[1][0], fit.covariance[1][1]]],
+        nu: fit.nu,
+        u_factor: fit.u_factor,
+        estimated_u_deg: fit.estimated_u_deg,
+        chi2_reduced: if lines.stated { fit.chi2_reduced() } else { None },
+        probability: weighed.probability,
+        ln_evidence: lattice.ln_evidence,
+        merit,
+        calculated: rows.iter().filter(|r| r.status == Status::Used).count() + missing.len(),
+        lines: rows,
+        missing,
+        motif,
+        formula_units: weighed.formula_units,
+        same_lines_as: exact_twins(lattice.centring, a.value),
+        notes,
+    })
+}
+
+fn row(lines: &Lines, lattice: &Refined, i: usize, position: &impl Fn(u32) -> Option<f64>) -> LineOfReading {
+    let (line, hit) = (&lines.list[i], &lattice.lines[i]);
+    let used = hit.weight > 0.5;
+    let n = used.then_some(hit.line as u32);
+    let calculated_deg = n.and_then(position);
+    let status = match &line.ghost {
+        _ if used => Status::Used,
+        Some(ghost) => Status::Satellite { name: ghost.name.clone(), of: lines.list[ghost.of].index },
+        None => Status::Unindexed,
+    };
+    LineOfReading {
+        index: line.index,
+        two_theta_deg: line.two_theta_deg,
+        q_ratio: line.q / lines.list[0].q,
+        n,
+        hkl: n.map(|n| indices(n, lattice.centring)).unwrap_or_default(),
+        calculated_deg,
+        difference_deg: calculated_deg.map(|calculated| line.two_theta_deg - calculated),
+        status,
+    }
+}
+
+/// Calculated lines between the start of the scan and the last observed line that no row carries.
+fn missing_lines(
+    lines: &Lines,
+    centring: Centring,
+    sequence: &Sequence,
+    a: f64,
+    rows: &[LineOfReading],
+    position: &impl Fn(u32) -> Option<f64>,
+) -> Vec<MissingLine> {
+    let first = (lines.q_start * a * a).ceil().max(1.0) as u32;
+    let last = (lines.q_last * a * a * (1.0 + 1e-3)) as u32;
+    (first..=last)
+        .filter(|n| sequence.allows(*n as usize) && !rows.iter().any(|row| row.n == Some(*n)))
+        .filter_map(|n| Some(MissingLine { n, hkl: indices(n, centring), two_theta_deg: position(n)? }))
+        .collect()
+}
+
+fn figures(
+    lines: &Lines,
+    sequence: &Sequence,
+    a: f64,
+    zero_deg: f64,
+    rows: &[LineOfReading],
+    wavelength: Wavelength,
+) -> Option<crate::merit::Merit> {
+    let q_of = |deg: f64| TwoTheta::from_deg(deg - zero_deg).q_per_square_angstrom(wavelength);
+    let indexed: Vec<Indexed> = rows
+        .iter()
+        .filter_map(|row| {
+            Some(Indexed {
+                q_observed: q_of(row.two_theta_deg),
+                q_calculated: f64::from(row.n?) / (a * a),
+                difference_deg: row.difference_deg?,
+            })
+        })
+        .collect();
+    let unindexed: Vec<f64> =
+        rows.iter().filter(|row| row.status == Status::Unindexed).map(|row| q_of(row.two_theta_deg)).collect();
+    let below = sequence.count(lines.q_start * a * a);
+    merit(&indexed, &unindexed, |q| sequence.count(q * a * a + 1e-6).saturating_sub(below) as usize)
+}
+
+/// Diamond-like: every line with even indices whose N/4 is odd (200, 222, 420 …) is absent, all of several.
+fn diamond_motif(rows: &[LineOfReading], missing: &[MissingLine]) -> Option<String> {
+    let hidden = |n: u32| n.is_multiple_of(4) && !(n / 4).is_multiple_of(2);
+    let seen: Vec<u32> = rows.iter().filter_map(|row| row.n).collect();
+    let shown = |n: &u32| !hidden(*n);
+    let absent = missing.iter().filter(|line| hidden(line.n)).count();
+    let odd = seen.iter().any(|n| !n.is_multiple_of(2));
+    (odd && absent >= MOTIF_LINES && seen.len() > MOTIF_LINES && seen.iter().all(shown)).then(|| {
+        format!(
+            "diamond-like: of the face-centred lines, all {absent} with even indices and h + k + l not a multiple of four \
+             (200, 222, 420 …) are absent, as in diamond and silicon, or in fluorite, where they are very weak"
+        )
+    })
+}
+
+/// Adds to each reading those others that index the same lines at the same places.
+fn name_partners(readings: &mut [Reading], weighed: &Weighing) {
+    let names: Vec<Twin> = readings
+        .iter()
+        .map(|r| Twin {
+            crystal_system: "cubic",
+            centring: r.centring.to_string().chars().next().unwrap_or('P'),
+            cell: [r.a.value, r.a.value, r.a.value, 90.0, 90.0, 90.0],
+            volume_ratio: r.volume.value / f64::from(r.centring.multiplicity()),
+            kind: TwinKind::ObservedLines,
+        })
+        .collect();
+    for i in 0..readings.len() {
+        for (j, twin) in names.iter().enumerate().filter(|(j, _)| *j != i) {
+            if same_lines(&readings[i], &readings[j]) && weighed.readings[j].probability > 0.0 {
+                let volume_ratio = twin.volume_ratio / names[i].volume_ratio;
+                readings[i].same_lines_as.push(Twin { volume_ratio, ..twin.clone() });
+            }
+        }
+    }
+}
+
+/// Whether two readings use the same lines and put them at the same places, within the s.u. of a line.
+fn same_lines(x: &Reading, y: &Reading) -> bool {
+    x.lines.iter().zip(&y.lines).all(|(p, q)| match (p.calculated_deg, q.calculated_deg) {
+        (Some(p), Some(q)) => (p - q).abs() < 0.002,
+        (None, None) => true,
+        _ => false,
+    })
+}
+
+fn lattice_name(reading: &Reading) -> String {
+    format!("{} with a = {} Å", reading.centring, reading.a)
+}
+
+fn why_ambiguous(readings: &[Reading], weighed: &Weighing) -> Option<String> {
+    let (first, second) = (readings.first()?, readings.get(1)?);
+    let (small, large) = if first.a.value < second.a.value { (first, second) } else { (second, first) };
+    let ratio = large.a.value / small.a.value;
+    let names = format!("{} and {}", lattice_name(first), lattice_name(second));
+    let halved = weighed.readings.iter().take(2).any(|r| r.halved);
+    let primitive_and_body = small.centring == Centring::P && large.centring == Centring::I;
+    Some(if halved && same_lines(first, second) {
+        format!(
+            "ambiguous: {names} explain the same lines. Every line of the primitive cell is there; the face-centred cell of \
+             twice the edge has no more if its two kinds of atoms scatter alike, so that all lines with odd indices vanish, as \
+             in KCl. The probability is shared equally; the density (formula units per cell) or one weak odd line decides."
+        )
+    } else if primitive_and_body && (ratio / std::f64::consts::SQRT_2 - 1.0).abs() < 1e-3 && same_lines(first, second) {
+        let deciding = if small.lines.iter().filter_map(|line| line.n).max() < Some(7) {
+            "The ratios of Q are the same for both up to the sixth line. A seventh line at seven times the first Q decides for I \
+             (14 is a sum of three squares, 7 is not)"
+        } else {
+            "The lines at which they differ (7, 15, 23 and 28 times the first Q only for I; 14 and 30 times only for P) are not \
+             in the list"
+        };
+        format!(
+            "ambiguous: {names} explain the same lines. {deciding}; the density decides as well. The probability is shared by \
+             the number of lines that each calculates."
+        )
+    } else {
+        format!(
+            "ambiguous: {names} both explain the lines; the evidence differs by {:.1} nats only.",
+            (first.ln_evidence - second.ln_evidence).abs()
+        )
+    })
+}
+
+fn verdict(readings: &[Reading], weighed: &Weighing, found: bool, ambiguous: bool) -> String {
+    let Some(first) = readings.first() else {
+        return "not cubic: no cubic lattice explains the lines with as few foreign ones as are allowed".to_owned();
+    };
+    if !found {
+        return match weighed.rival {
+            Some(rival) => format!(
+                "not cubic: a {} lattice (a = {:.4} Å, c = {:.4} Å) explains the lines with fewer calculated ones than {}",
+                rival.kind.name(),
+                rival.a,
+                rival.c,
+                lattice_name(first)
+            ),
+            None => format!(
+                "not cubic, or too few lines to say: {} explains {} of {} lines, no more than other lattices would",
+                lattice_name(first),
+                first.lines.iter().filter(|l| l.status == Status::Used).count(),
+                first.lines.len()
+            ),
+        };
+    }
+    let foreign = first.unindexed().count();
+    let next = match readings.get(1) {
+        Some(second) if !ambiguous && second.probability > 0.05 => {
+            format!("; next {} with probability {:.2}", lattice_name(second), second.probability)
+        }
+        _ => String::new(),
+    };
+    let rest = if foreign == 0 { String::new() } else { format!(", {foreign} without indices") };
+    format!(
+        "cubic {}{}; {} of {} lines have indices{rest}{next}",
+        lattice_name(first),
+        if ambiguous { " or another reading (see the reason)" } else { "" },
+        first.lines.iter().filter(|l| l.status == Status::Used).count(),
+        first.lines.len()
+    )
+}
+
+fn notes(given: usize, lines: &Lines, options: &CubicOptions) -> Vec<String> {
+    let mut notes = vec![
+        "probabilities are provisional: a likelihood against random lines, with constants chosen on synthetic lists"
+            .to_owned(),
+    ];
+    notes.push(if lines.stated {
+        "s.u. of the lines as stated, with one common factor of 1 or more".to_owned()
+    } else {
+        "the lines carry no s.u. (or not all): taken alike for all, and found from the residuals".to_owned()
+    });
+    if given > lines.list.len() {
+        notes.push(format!(
+            "the first {} lines by angle were used, {} beyond were not",
+            options.most_lines,
+            given - lines.list.len()
+        ));
+    }
+    if options.content.is_none() {
+        notes.push(
+            "equally good readings are ordered by the smaller cell; with a formula, by the volume per atom".to_owned(),
+        );
+    }
+    notes
+}
