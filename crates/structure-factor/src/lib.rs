@@ -8,6 +8,7 @@
 //! In: a [`Structure`], reflections, an energy in eV. Out: F² in e² per cell, one for each reflection, same order.
 //! Elsewhere: multiplicity, Lorentz–polarisation (`pattern`); the syntax of CIF (`cif`); symmetry (`lattice`).
 
+mod block;
 mod block_sum;
 mod checks;
 mod content;
@@ -21,6 +22,7 @@ mod formula;
 mod from_cif;
 mod from_toml;
 mod model;
+mod running_sum;
 mod structure;
 pub mod tables;
 

@@ -7,7 +7,8 @@
 use lattice::{Cell, SpaceGroup};
 
 use crate::StructureFactorError;
-use crate::block_sum::{Block, Sums};
+use crate::block::Block;
+use crate::block_sum::Sums;
 use crate::expand::{ExpandedSite, same_point};
 use crate::structure::{Atom, Displacement, Structure};
 use crate::tables::{ScatteringFactor, check_s, dispersion, ion_name, scattering_factor};
