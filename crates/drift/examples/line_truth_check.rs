@@ -13,7 +13,7 @@
 //! the series, and the difference is moved by L, which a shift of the truth would do. Printed: z of (δ − true) by cause and
 //! parameter, and rates of decisions, with two-sided 99.9 % intervals.
 
-use drift::decide::{Tails, Tested, decide};
+use drift::decide::{Tails, Tested, Verdict, decide};
 use drift::{Decision, Expansion, LineList, Options, Phase, Report, check};
 use indexing::assign::Predicted;
 use lattice::{AxisSystem, Cell, SpaceGroup, reflections};
@@ -134,6 +134,8 @@ fn list(record: &Value, u_temperature_c: f64) -> LineList {
 #[derive(Default)]
 struct Tally {
     z: BTreeMap<String, Vec<f64>>,
+    /// Whether a change of the detectable size was found, by parameter.
+    found: BTreeMap<String, Vec<bool>>,
     decisions: [usize; 3],
     u: Vec<f64>,
     left_out: usize,
@@ -172,19 +174,23 @@ fn judge(series: &Series, head: &Head, arguments: &Arguments, tally: &mut BTreeM
         let z = (headline.delta - true_ppm(headline.parameter)) / headline.u;
         entry.z.entry("of largest |z|".to_owned()).or_default().push(z);
     }
-    let mut decision = batch.decision;
-    if let Some(ratio) = arguments.limit_from_u {
-        let moved: Vec<Tested> = batch
-            .deltas
-            .iter()
-            .map(|d| Tested {
-                delta: d.delta - true_ppm(d.parameter) + ratio * d.u,
-                u: d.u,
-                limit: ratio * d.u,
-                tails: Tails::new(d.dof.unwrap_or(f64::INFINITY)),
-            })
-            .collect();
-        decision = drift::decide::overall(&decide(&moved, arguments.risk));
+    // The same noise about another truth: what a shift of all lists' cells would do.
+    let moved = |limit_in_u: Option<f64>, shift: &dyn Fn(usize) -> f64| -> Vec<Verdict> {
+        let tested = batch.deltas.iter().enumerate().map(|(j, d)| Tested {
+            delta: d.delta - true_ppm(d.parameter) + shift(j),
+            u: d.u,
+            limit: limit_in_u.map_or(d.limit, |ratio| ratio * d.u),
+            tails: Tails::new(d.dof.unwrap_or(f64::INFINITY)),
+        });
+        decide(&tested.collect::<Vec<_>>(), arguments.risk)
+    };
+    let decision = arguments
+        .limit_from_u
+        .map_or(batch.decision, |ratio| drift::decide::overall(&moved(Some(ratio), &|j| ratio * batch.deltas[j].u)));
+    for (j, delta) in batch.deltas.iter().enumerate() {
+        let only_this = |k: usize| if k == j { delta.detectable } else { 0.0 };
+        let found = moved(None, &only_this)[j].decision == Decision::Drifted;
+        entry.found.entry(delta.parameter.to_owned()).or_default().push(found);
     }
     entry.decisions[decision as usize] += 1;
     for list in report.batches.iter().filter_map(|b| b.list.as_ref()).chain([&report.reference]) {
@@ -251,6 +257,16 @@ fn rates(tally: &BTreeMap<String, Tally>) {
             print!(" {decision} {:.4} [{low:.4}, {high:.4}]", hits as f64 / n as f64);
         }
         println!("  u {:.3} ppm  {}  {}", u[u.len() / 2], entry.left_out, entry.enlarged);
+        for (parameter, found) in &entry.found {
+            let hits = found.iter().filter(|f| **f).count();
+            let (low, high) = interval(hits, found.len());
+            let rate = hits as f64 / found.len() as f64;
+            println!(
+                "{:<22}{:>7}  a change of {parameter} of detectable size: drifted {rate:.4} [{low:.4}, {high:.4}]",
+                "",
+                found.len()
+            );
+        }
     }
 }
 
