@@ -3,12 +3,12 @@
 use super::decide::{self, Decision, Tails, Tested};
 use super::describe;
 use super::input::{DriftError, LineList, Options, Phase};
-use super::joint::{self, JointFit, JointList, Parts, ZeroPrior};
+use super::joint::{self, JointFit, JointList, ZeroPrior};
 use super::prepare::{self, Common, Keys, Prepared, UNIT_U_DEG};
 use super::report::{
     BatchReport, BudgetEntry, CellValue, Delta, Displacement, LineNoise, LineReport, ListReport, RELEASE, Report,
 };
-use super::scatter::{NoNoise, Noise, Setting, Weighed, weigh};
+use super::scatter::{NoNoise, Setting, Weighed, effective_dof, weigh};
 use super::temperature::{Correction, correction};
 use indexing::assign::geometry::CellModel;
 use values::{Diagnostic, Measured, Wavelength};
@@ -290,7 +290,7 @@ impl Comparison<'_> {
     fn batch(&self, list: &LineList, place: &Result<usize, String>, limit_deg: f64) -> BatchReport {
         let place = match place {
             Ok(place) => *place,
-            Err(reason) => return BatchReport::without_cell(list, reason),
+            Err(reason) => return BatchReport::without_cell(&list.id, reason),
         };
         let risk = self.common.options.risk;
         let tested: Vec<usize> = self.tested();
@@ -390,43 +390,6 @@ impl Comparison<'_> {
                 .filter(|(_, u)| *u > 0.0)
                 .map(|(source, u)| BudgetEntry { source, u: u * unit })
                 .collect(),
-        }
-    }
-}
-
-/// Degrees of freedom of a sum of variances (Welch and Satterthwaite; GUM, JCGM 100:2008, G.4). Lists with one pooled factor
-/// share one estimate, so their parts are added first.
-fn effective_dof(parts: Parts, outside: f64, mine: Noise, reference: Noise) -> f64 {
-    let total = parts.total() + outside;
-    let mut doubt = 0.0;
-    let mut pooled = 0.0;
-    let mut pooled_dof = f64::INFINITY;
-    for (variance, noise) in [(parts.own, mine), (parts.reference, reference)] {
-        if noise.pooled {
-            pooled += variance;
-            pooled_dof = pooled_dof.min(noise.dof);
-        } else {
-            doubt += variance * variance / noise.dof;
-        }
-    }
-    if pooled_dof.is_finite() {
-        doubt += pooled * pooled / pooled_dof;
-    }
-    if doubt > 0.0 { total * total / doubt } else { f64::INFINITY }
-}
-
-impl BatchReport {
-    fn without_cell(list: &LineList, reason: &str) -> Self {
-        Self {
-            id: list.id.clone(),
-            list: None,
-            decision: Decision::Undecided,
-            deltas: Vec::new(),
-            headline: None,
-            displacement_difference: None,
-            cause: Vec::new(),
-            statement: format!("No cell: {reason}."),
-            notes: Vec::new(),
         }
     }
 }

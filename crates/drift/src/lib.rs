@@ -1,6 +1,6 @@
 //! Has a lattice parameter moved between batches: difference, uncertainty, decision.
 //!
-//! [`check`] takes a reference and batches as lists of lines, the phase, and [`Options`]; it returns a [`Report`].
+//! [`check()`] takes a reference and batches as lists of lines, the phase, and [`Options`]; it returns a [`Report`].
 //!
 //! 1. `prepare`: each line gets its reflections (`indexing::assign`); foreign and ambiguous lines are kept aside and listed.
 //! 2. `joint`: all lists are fitted at once, a cell and a displacement for each and one zero for all, so that the

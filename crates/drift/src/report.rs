@@ -206,6 +206,21 @@ pub struct BatchReport {
 }
 
 impl BatchReport {
+    /// A batch whose lines give no cell.
+    pub(crate) fn without_cell(id: &str, reason: &str) -> Self {
+        Self {
+            id: id.to_owned(),
+            list: None,
+            decision: Decision::Undecided,
+            deltas: Vec::new(),
+            headline: None,
+            displacement_difference: None,
+            cause: Vec::new(),
+            statement: format!("No cell: {reason}."),
+            notes: Vec::new(),
+        }
+    }
+
     /// The delta that stands for the batch.
     #[must_use]
     pub fn headline(&self) -> Option<&Delta> {

@@ -13,7 +13,7 @@
 //! Sources: Birge, Phys. Rev. 40 (1932) 207; the levels are ours (no source) and are small so that the tests do not
 //! change the rates of decisions where the s.u. are right.
 
-use super::joint::{self, JointFit, JointList, ZeroPrior};
+use super::joint::{self, JointFit, JointList, Parts, ZeroPrior};
 use indexing::assign::geometry::CellModel;
 use statrs::distribution::{ChiSquared, ContinuousCDF, FisherSnedecor};
 
@@ -292,4 +292,25 @@ fn too_large(chi2: f64, dof: f64, level: f64) -> bool {
     dof >= 1.0
         && chi2 > dof + 2.0 * (2.0 * dof).sqrt()
         && ChiSquared::new(dof).is_ok_and(|distribution| distribution.sf(chi2) < level)
+}
+
+/// Degrees of freedom of a sum of variances (Welch and Satterthwaite; GUM, JCGM 100:2008, G.4). Lists with one pooled factor
+/// share one estimate, so their parts are added first.
+pub(crate) fn effective_dof(parts: Parts, outside: f64, mine: Noise, reference: Noise) -> f64 {
+    let total = parts.total() + outside;
+    let mut doubt = 0.0;
+    let mut pooled = 0.0;
+    let mut pooled_dof = f64::INFINITY;
+    for (variance, noise) in [(parts.own, mine), (parts.reference, reference)] {
+        if noise.pooled {
+            pooled += variance;
+            pooled_dof = pooled_dof.min(noise.dof);
+        } else {
+            doubt += variance * variance / noise.dof;
+        }
+    }
+    if pooled_dof.is_finite() {
+        doubt += pooled * pooled / pooled_dof;
+    }
+    if doubt > 0.0 { total * total / doubt } else { f64::INFINITY }
 }

@@ -2,6 +2,8 @@
 //!
 //! Lists are invented here: positions from `lattice::Cell::d`, Bragg's law and `instrument::shift`, noise from a fixed seed.
 
+#![allow(clippy::unwrap_used, reason = "what a fixture does not hold fails the test")]
+
 use drift::{Decision, DriftError, Expansion, LineList, Options, Phase, Report, check};
 use indexing::assign::Predicted;
 use instrument::shift;

@@ -3,6 +3,8 @@
 //! Outside: `fixtures/joint_reference.json` by `tools/drift_reference.py`: scipy.optimize.least_squares over all unknowns at
 //! once, numerical derivatives, dense covariance.
 
+#![allow(clippy::unwrap_used, reason = "what a fixture does not hold fails the test")]
+
 use drift::{Expansion, LineList, Options, Phase, check};
 use indexing::assign::Predicted;
 use lattice::{AxisSystem, Cell};

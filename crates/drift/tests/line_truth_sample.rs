@@ -3,6 +3,8 @@
 //! Outside: lists drawn by an independent generator of synthetic measurements (it shares no code with this program), sample
 //! written by `tools/drift_sample.py`. The full size, 20 000 series each, is run with the example `line_truth_check`.
 
+#![allow(clippy::unwrap_used, reason = "what a fixture does not hold fails the test")]
+
 use drift::{Expansion, LineList, Options, Phase, check};
 use indexing::assign::Predicted;
 use lattice::{AxisSystem, Cell};
