@@ -35,6 +35,17 @@ pub fn hkl(hkl: [i32; 3]) -> String {
     }
 }
 
+/// A remark as a sentence: with a capital where it begins with a plain word, and a full stop.
+pub fn sentence(text: &str) -> String {
+    let word = text.split(' ').next().unwrap_or_default();
+    let plain = word.chars().all(|c| c.is_ascii_lowercase() || c == '-' || c == ',') && word.len() > 1;
+    let mut text = if plain { text[..1].to_uppercase() + &text[1..] } else { text.to_owned() };
+    if !text.ends_with(['.', '!', '?', ':']) {
+        text.push('.');
+    }
+    text
+}
+
 /// A field of a CSV row, quoted where it must be.
 pub fn csv_field(text: &str) -> String {
     if text.contains([',', '"', '\n', '\r']) { format!("\"{}\"", text.replace('"', "\"\"")) } else { text.to_owned() }
@@ -42,7 +53,7 @@ pub fn csv_field(text: &str) -> String {
 
 #[cfg(test)]
 mod tests {
-    use super::{csv_field, hkl, table};
+    use super::{csv_field, hkl, sentence, table};
 
     #[test]
     fn indices_are_parted_only_where_they_must_be() {
@@ -55,6 +66,13 @@ mod tests {
     fn fields_with_commas_and_quotes_are_quoted() {
         assert_eq!(csv_field("a"), "a");
         assert_eq!(csv_field("a,\"b\""), "\"a,\"\"b\"\"\"");
+    }
+
+    #[test]
+    fn remarks_become_sentences_but_names_stay() {
+        assert_eq!(sentence("not cubic"), "Not cubic.");
+        assert_eq!(sentence("expansion_per_K stands alone."), "expansion_per_K stands alone.");
+        assert_eq!(sentence("d is given"), "d is given.");
     }
 
     #[test]

@@ -9,7 +9,7 @@ use pattern::{
 };
 use serde_json::{Value, json};
 use structure_factor::Structure;
-use values::Diagnostic;
+use values::{Diagnostic, Wavelength};
 
 use crate::args::{self, OutputArgs, RadiationArgs};
 use crate::caution;
@@ -109,7 +109,7 @@ pub fn run(args: &PredictArgs) -> Result<Done, Failure> {
     let options = PredictOptions {
         wavelength: radiation.primary,
         from_deg: (args.from - BEYOND_DEG).max(0.05),
-        to_deg: (args.to + BEYOND_DEG).min(179.9),
+        to_deg: beyond(args.to, radiation.primary),
         dispersion: !args.no_dispersion,
         polarisation: args
             .monochromator
@@ -168,6 +168,13 @@ pub fn run(args: &PredictArgs) -> Result<Done, Failure> {
     remarks.extend(caution::for_elements(loaded.iter().flat_map(|s| s.atoms.iter().map(|a| a.element.as_str()))));
     remarks.push(caution::DEFER.to_owned());
     Ok(Done { outputs, exit_code: 0, remarks })
+}
+
+/// The end of the range with its margin, which never asks for more than the scattering factors hold: s = sin θ/λ ≤ 2 Å⁻¹.
+fn beyond(to_deg: f64, wavelength: Wavelength) -> f64 {
+    let sine = structure_factor::tables::S_MAX * wavelength.angstrom();
+    let last = if sine < 1.0 { 2.0 * sine.asin().to_degrees() } else { 180.0 };
+    (to_deg + BEYOND_DEG).min(179.9).min(last).max(to_deg)
 }
 
 fn check_numbers(args: &PredictArgs) -> Result<(), Failure> {
@@ -310,7 +317,7 @@ pub fn human(phases: &[PhasePrediction], all: bool, radiation: &str, notes: &[St
             let _ = writeln!(text, "  mass fraction {:.4}", phase.mass_fraction);
         }
         for note in &phase.notes {
-            let _ = writeln!(text, "  {note}");
+            let _ = writeln!(text, "  {}", table::sentence(note));
         }
     }
     for note in notes {

@@ -179,7 +179,7 @@ pub fn human(report: &Report, radiation: &str, phase: &str, notes: &[String], li
     text.push_str(&cells(report));
     let _ = writeln!(text, "Zero after the fit: {}°.", report.zero_deg);
     for note in notes.iter().chain(&report.notes).chain(&report.reference.notes) {
-        let _ = writeln!(text, "{note}");
+        let _ = writeln!(text, "{}", table::sentence(note));
     }
     if lines {
         for list in std::iter::once(&report.reference).chain(report.batches.iter().filter_map(|b| b.list.as_ref())) {

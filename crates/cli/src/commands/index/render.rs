@@ -2,7 +2,7 @@
 
 use std::fmt::Write as _;
 
-use indexing::cubic::{Centring, CubicAnswer, LineOfReading, Reading, Status, Twin};
+use indexing::cubic::{Centring, CubicAnswer, LineOfReading, Reading, Status, Twin, TwinKind};
 use indexing::materials::Arrangement;
 use serde_json::{Value, json};
 use values::{Measured, Peak};
@@ -182,17 +182,20 @@ fn status(line: &LineOfReading, context: &Context<'_>) -> String {
     }
 }
 
+/// Lattices with the same lines in this list only that the table names; exact ones are all named.
+const SHOWN_TWINS: usize = 2;
+
 /// The table for people: verdict, then the first readings in full, the others in a line.
 pub fn human(answer: &CubicAnswer, context: &Context<'_>, full: usize) -> String {
     let mut text = String::new();
     let _ = writeln!(text, "{}, {} lines, {}", context.name, context.peaks.len(), context.radiation);
-    let _ = writeln!(text, "{}", answer.verdict);
+    let _ = writeln!(text, "{}", table::sentence(&answer.verdict));
     if let Some(reason) = &answer.ambiguous {
-        let _ = writeln!(text, "Ambiguous: {reason}");
+        let _ = writeln!(text, "{}", table::sentence(reason));
     }
     let _ = writeln!(text, "Probability that none of these is right: {:.3} (provisional).", answer.probability_none);
     for note in context.notes.iter().chain(&answer.notes) {
-        let _ = writeln!(text, "{note}");
+        let _ = writeln!(text, "{}", table::sentence(note));
     }
     for reading in answer.readings.iter().take(full) {
         text.push_str(&reading_text(reading, context));
@@ -258,16 +261,26 @@ fn reading_text(reading: &Reading, context: &Context<'_>) -> String {
             p.name, p.fraction, p.radius
         );
     }
-    for twin in &reading.same_lines_as {
+    let (exact, listed): (Vec<&Twin>, Vec<&Twin>) =
+        reading.same_lines_as.iter().partition(|twin| twin.kind == TwinKind::Exact);
+    for twin in exact.iter().chain(listed.iter().take(SHOWN_TWINS)) {
         let [a, b, c, ..] = twin.cell;
+        let reach = if twin.kind == TwinKind::Exact { "at every angle" } else { "in this list" };
         let _ = writeln!(
             text,
-            "   same lines ({}): {} {} {a:.4} {b:.4} {c:.4} Å, primitive volume × {:.3}; the higher symmetry is listed",
-            twin.kind, twin.crystal_system, twin.centring, twin.volume_ratio
+            "   same lines {reach}: {} {} {a:.4} {b:.4} {c:.4} Å, primitive volume × {:.3}",
+            twin.crystal_system, twin.centring, twin.volume_ratio
+        );
+    }
+    if listed.len() > SHOWN_TWINS {
+        let _ = writeln!(
+            text,
+            "   and {} larger cells with the lines of this list (in the JSON)",
+            listed.len() - SHOWN_TWINS
         );
     }
     for note in &reading.notes {
-        let _ = writeln!(text, "   {note}");
+        let _ = writeln!(text, "   {}", table::sentence(note));
     }
     let number = |x: Option<f64>, digits: usize| x.map(|x| format!("{x:.digits$}")).unwrap_or_default();
     let rows: Vec<Vec<String>> = reading
