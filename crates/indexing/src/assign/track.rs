@@ -118,10 +118,23 @@ impl Task<'_> {
                 1.0 / (u * u * tail)
             };
             self.step(&mut state, &start, &groups, &pairs, weight, 10.0)?;
+            let before = groups;
             (groups, calculated) = self.predict(&state, apart)?;
+            pairs = self.renamed(&pairs, &before, &groups);
         }
+        // The last step may have joined or parted lines; whether it did or not, this is the final word.
+        let pairs = self.nearest(&calculated, |i, r, _| r.abs() <= gates[i]);
         let score = self.score(&calculated, &pairs);
         Some(Tracked { state, groups, calculated, pairs, gates, score })
+    }
+
+    /// The same pairs in groups made anew: a moved cell changes the order of lines, and which reflections share one.
+    fn renamed(&self, pairs: &[Option<usize>], before: &Groups, after: &Groups) -> Vec<Option<usize>> {
+        let mut home = vec![None; self.predicted.len()];
+        for g in 0..after.spans.len() {
+            after.reflections(g).iter().for_each(|i| home[*i] = Some(g));
+        }
+        pairs.iter().map(|g| g.and_then(|g| home[*before.reflections(g).first()?])).collect()
     }
 
     /// Groups and their positions for a state.

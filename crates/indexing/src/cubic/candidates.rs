@@ -52,7 +52,7 @@ pub(crate) fn candidates(
             }
         }
     }
-    best_distinct(pool)
+    best_distinct(pool, options.zero_deg.value)
 }
 
 /// Window of the first look: wide enough for the error of an edge found from two lines.
@@ -127,8 +127,10 @@ fn score(
 }
 
 /// Best first; candidates of one centring whose edges agree within 0.1 % count once.
-fn best_distinct(mut pool: Vec<Candidate>) -> Vec<Candidate> {
-    pool.sort_by(|x, y| y.score.total_cmp(&x.score));
+fn best_distinct(mut pool: Vec<Candidate>, zero_mean: f64) -> Vec<Candidate> {
+    // Of equal scores the likelier zero: scores count hits in a wide window and are often equal.
+    let off = |candidate: &Candidate| (candidate.zero_deg - zero_mean).abs();
+    pool.sort_by(|x, y| y.score.total_cmp(&x.score).then(off(x).total_cmp(&off(y))));
     let mut kept: Vec<Candidate> = Vec::with_capacity(KEPT);
     for candidate in pool {
         let known = kept

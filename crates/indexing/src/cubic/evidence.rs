@@ -19,6 +19,8 @@ use super::sequence::{Centring, Sequence};
 
 /// Share of foreign lines.
 pub(crate) const FOREIGN: f64 = 0.1;
+/// S.u. with which the lines of a candidate are caught, degrees: half of the window of the first look.
+const CAPTURE_DEG: f64 = 0.05;
 /// Steps of the reweighted fit at each scale.
 const STEPS: usize = 4;
 
@@ -100,6 +102,11 @@ pub(crate) fn refine(
     let mut best: Option<(f64, f64, Step)> = None;
     let mut terms = Vec::with_capacity(scales.len());
     let (mut ln_a, mut zero) = (-0.5 * start.inverse_a2.ln(), start.zero_deg);
+    // A candidate may be off by the window of the first look: catch its lines with a wide s.u. first.
+    let narrowest = lines.list.iter().filter_map(|line| line.u_deg).fold(CAPTURE_DEG, f64::min);
+    let capture = if lines.stated { CAPTURE_DEG / narrowest } else { CAPTURE_DEG };
+    let caught = at_scale(lines, sequence, ln_a, zero, capture, options)?;
+    (ln_a, zero) = (caught.ln_a, caught.zero);
     // From the widest scale down: each start is the end of the step before.
     for &(scale, ln_prior) in scales.iter().rev() {
         let step = at_scale(lines, sequence, ln_a, zero, scale, options)?;

@@ -59,8 +59,10 @@ fn ln_unsearched(n: usize) -> f64 {
 pub(crate) fn weigh(lines: &Lines, refined: Vec<Refined>, rivals: &[Rival], options: &CubicOptions) -> Weighing {
     let mut readings: Vec<Weighed> = Vec::new();
     for lattice in refined {
-        if let Some(partner) = halved_partner(lines, &lattice) {
-            readings.retain(|r| !is_same(&r.lattice, &partner));
+        // By falling evidence: an ordinary face-centred reading that stands already explains more and stays.
+        if let Some(partner) = halved_partner(lines, &lattice)
+            && !readings.iter().any(|r| is_same(&r.lattice, &partner))
+        {
             readings.push(Weighed { lattice: partner, probability: 0.0, formula_units: None, halved: true });
         }
         if !readings.iter().any(|r| r.halved && is_same(&r.lattice, &lattice)) {
@@ -103,9 +105,11 @@ fn is_same(x: &Refined, y: &Refined) -> bool {
 
 /// More probable first; equal ones (within 1 %) by the volume per atom where the formula is known, then by the smaller cell.
 fn order(x: &Weighed, y: &Weighed, options: &CubicOptions) -> std::cmp::Ordering {
-    let equal = (x.probability - y.probability).abs() <= 0.01 * x.probability.max(y.probability);
-    if !equal {
-        return y.probability.total_cmp(&x.probability);
+    // In steps of 1 %, so that equality is transitive; what rounding parts across a step differs by less than 1 % all the same.
+    let step = |w: &Weighed| (w.probability.max(f64::MIN_POSITIVE).ln() * 100.0).round();
+    let by_probability = step(y).total_cmp(&step(x));
+    if by_probability.is_ne() {
+        return by_probability;
     }
     let by_volume = options.content.map_or(std::cmp::Ordering::Equal, |content| {
         volume_misfit(&x.lattice, content.heavy_atoms).total_cmp(&volume_misfit(&y.lattice, content.heavy_atoms))
@@ -140,7 +144,8 @@ fn composition(lattice: &Refined, options: &CubicOptions) -> (f64, Option<Measur
 
 /// The face-centred reading of twice the edge with the same evidence, where the module's conditions hold.
 fn halved_partner(lines: &Lines, lattice: &Refined) -> Option<Refined> {
-    let complete = lattice.used() == lattice.calculated && lattice.used() >= COMPLETE_LINES;
+    let all = lattice.used() == lattice.calculated && lattice.foreign(lines) == 0;
+    let complete = all && lattice.used() >= COMPLETE_LINES;
     let holds = lattice.centring == Centring::P && complete && ONE_ATOM_VOLUME.contains(&lattice.a.powi(3));
     if !holds || !falls_like_one_atom(lines, lattice) {
         return None;
