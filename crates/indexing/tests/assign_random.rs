@@ -71,7 +71,7 @@ fn random_list(all: &[Reflection], sigma_deg: f64, draws: &mut Draws) -> (Vec<Op
     }
     for _ in 0..2 {
         names.push(None);
-        positions.push(positions[0] + draws.uniform() * 60.0);
+        positions.push(positions.first().unwrap_or(&30.0) + draws.uniform() * 60.0);
     }
     let peak = |x: f64| Peak::at(TwoTheta::from_deg(x)).with_u_deg(sigma_deg);
     (names, positions.into_iter().map(peak).collect())

@@ -74,7 +74,7 @@ impl Task<'_> {
                     let w = window(self.observed[i]) / 3.0;
                     1.0 / ((w * w + self.u.map_or(0.0, |u| u[i] * u[i])) * (1.0 + (2.0 * r / w).powi(2)))
                 };
-                self.step(&mut state, &start, &groups, &pairs, weight, 1.0)?;
+                self.step(&mut state, &start, &groups, &pairs, weight)?;
             }
             (groups, calculated) = self.predict(&state, &apart)?;
         }
@@ -117,7 +117,7 @@ impl Task<'_> {
                 let tail = if soft { 1.0 + (r / (2.0 * u)).powi(2) } else { 1.0 };
                 1.0 / (u * u * tail)
             };
-            self.step(&mut state, &start, &groups, &pairs, weight, 10.0)?;
+            self.step(&mut state, &start, &groups, &pairs, weight)?;
             let before = groups;
             (groups, calculated) = self.predict(&state, apart)?;
             pairs = self.renamed(&pairs, &before, &groups);
@@ -213,7 +213,8 @@ impl Task<'_> {
         }
     }
 
-    /// One Gauss–Newton step of cell, displacement and zero; `loose` widens the priors.
+    /// One Gauss–Newton step of cell, displacement and zero. The priors hold what the lines do not determine, such as a − b
+    /// where all lines are pairs that the list does not resolve; elsewhere the lines outweigh them by far.
     fn step(
         &self,
         state: &mut State,
@@ -221,7 +222,6 @@ impl Task<'_> {
         groups: &Groups,
         pairs: &[Option<usize>],
         weight: impl Fn(usize, f64) -> f64,
-        loose: f64,
     ) -> Option<()> {
         let positions = Positions::new(self.model, &state.six, self.wavelength_angstrom)?;
         let free = self.model.free();
@@ -240,9 +240,9 @@ impl Task<'_> {
         }
         let moved = self.model.steps_between(&start.six, &state.six);
         for (j, moved) in moved.iter().enumerate() {
-            normal.prior(j, -moved, self.cell_spread * loose);
+            normal.prior(j, -moved, self.cell_spread);
         }
-        normal.prior(free, -state.s_over_r, self.displacement_spread * loose);
+        normal.prior(free, -state.s_over_r, self.displacement_spread);
         normal.prior(free + 1, self.zero - state.zero, self.u_zero);
         let step = normal.factor()?.solve(&normal.rhs);
         state.six = self.model.stepped(&state.six, &step[..free]);
