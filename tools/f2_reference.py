@@ -3,8 +3,7 @@
 usage: python tools/f2_reference.py OUT_FOLDER FILE.cif...
 
 For each file one JSON document {wavelength_A, from_deg, to_deg, reflections: [{h, k, l, d_A, multiplicity, F2}]}.
-From outside: the CIF reader, the operations, the absences and the Cromer-Mann coefficients (in single precision, as it keeps
-them) of gemmi, charges on. Here: the sum itself, and the rule that images of a site within 0.1 angstrom are one atom at their
+From outside: the CIF reader, the operations, the absences and the Cromer-Mann coefficients of gemmi, charges on. Here: the sum itself, and the rule that images of a site within 0.1 angstrom are one atom at their
 mean under the operations of the site, its tensor averaged alike. Shares no code with the program.
 """
 
@@ -22,6 +21,9 @@ WAVELENGTH = 1.5405929
 ONE_ATOM = 0.1  # angstrom
 TWO_PI_SQUARED = 2 * math.pi**2
 WANTED_REFLECTIONS = 150
+# gemmi gives each coefficient twice: as printed (11.7695, its attributes a, b, c) and as it computes (11.769499778747559, its
+# get_coefs). The two differ by up to 6e-8, which shows where the atoms of a structure nearly cancel.
+SINGLE_PRECISION = False
 
 
 def number(text):
@@ -159,8 +161,12 @@ def reflections(cell_metric_star, group, rotations, d_min, d_max):
 
 
 def coefficients(element, charge):
-    """Coefficients of the ion, else of the neutral atom."""
-    return gemmi.IT92_get_exact(element, charge) or gemmi.IT92_get_exact(element, 0)
+    """Four a, four b and c of the ion, else of the neutral atom."""
+    fit = gemmi.IT92_get_exact(element, charge) or gemmi.IT92_get_exact(element, 0)
+    if SINGLE_PRECISION:
+        numbers = fit.get_coefs()
+        return numbers[:4], numbers[4:8], numbers[8]
+    return fit.a, fit.b, fit.c
 
 
 def f2(sites, expanded, hkl, star):
@@ -169,8 +175,8 @@ def f2(sites, expanded, hkl, star):
     s2 = numpy.einsum("ni,ij,nj->n", hkl, star, hkl) / 4
     total = numpy.zeros(len(hkl), dtype=complex)
     for (_, element, charge, _, occupancy, b, _), (positions, matrices) in zip(sites, expanded):
-        fit = coefficients(element, charge)
-        f0 = fit.c + sum(a * numpy.exp(-bb * s2) for a, bb in zip(fit.a, fit.b))
+        a, exponents, c = coefficients(element, charge)
+        f0 = c + sum(ai * numpy.exp(-bi * s2) for ai, bi in zip(a, exponents))
         for x, matrix in zip(positions, matrices):
             if matrix is None:
                 t = numpy.exp(-b * s2)

@@ -3,8 +3,8 @@
 usage: python tools/random_structures.py FOLDER [COUNT] [SEED]          (default 2000 structures, seed 20240601)
 
 Structure number n takes setting n of gemmi's table, over and over, so that 564 structures hold every setting once. The symmetry
-is written as operations, as a Hall symbol or as an extended Hermann-Mauguin symbol, in turn. Sites are general or special, some
-of these a little off by rounding; displacements are U, B, anisotropic U or anisotropic B; tensors on special sites are
+is written as operations, as a Hall symbol or as an extended Hermann-Mauguin symbol, in turn. Sites are general or special, these
+rounded to 3 to 5 digits and some up to 0.08 angstrom off; displacements are U, B, anisotropic U or anisotropic B; tensors on special sites are
 compatible with the site in half of the cases. There are ions, ions without a row in the table, D, and occupancies below 1.
 Same arguments, same bytes.
 """
@@ -90,8 +90,12 @@ def random_atoms(rng, cell, ops):
         symbol = str(rng.choice(WITHOUT_ROW)) if rng.random() < 0.05 else str(rng.choice(kinds))
         x = special_position(rng, ops) if rng.random() < 0.5 else None
         special = x is not None
+        rotations = site_rotations(ops, x) if special else [numpy.eye(3)]
         x = rng.uniform(0, 1, 3) if x is None else x
         digits = int(rng.integers(3, 6)) if special else 5
+        if special and rng.random() < 0.2:
+            # Up to 0.08 angstrom off: merged below 0.1 angstrom between images, apart above.
+            x, digits = x + rng.uniform(-1, 1, 3) * 0.08 / numpy.array([cell.a, cell.b, cell.c]) / math.sqrt(3), 5
         x = numpy.round(x, digits)
         occupancy = round(float(rng.uniform(0.1, 1.0)), 3) if rng.random() < 0.25 else 1
         letters = symbol.rstrip("0123456789+-")
@@ -100,7 +104,7 @@ def random_atoms(rng, cell, ops):
         kind, equivalent = "Uiso", float(rng.uniform(0.002, 0.03))
         if rng.random() < 0.4:
             kind = "Uani"
-            u = random_tensor(rng, cell, site_rotations(ops, x), rng.random() < 0.5)
+            u = random_tensor(rng, cell, rotations, rng.random() < 0.5)
             equivalent = sum(u[:3]) / 3
             tensors.append([label, *(f"{scale * element:.6f}" for element in u)])
         if in_square:
