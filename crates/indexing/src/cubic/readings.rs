@@ -14,6 +14,10 @@ use values::{Peak, TwoTheta, Wavelength};
 /// Calculated lines that a diamond-like motif must hide, and observed ones, before it is named.
 const MOTIF_LINES: usize = 3;
 
+/// Readings with the same lines are named as partners above this share of a reading's probability: larger cells that merely
+/// contain the lattice are not.
+const PARTNER_SHARE: f64 = 0.01;
+
 pub(crate) fn answer(
     peaks: &[Peak],
     lines: &Lines,
@@ -81,6 +85,21 @@ fn reading(
                 .to_owned(),
         );
     }
+    let mut same_lines_as = exact_twins(lattice.centring, a.value);
+    if motif.is_some() {
+        let wider = a.value * std::f64::consts::SQRT_2;
+        notes.push(format!(
+            "a body-centred cell with a = {wider:.4} Å and the glide planes of garnet (I a -3 d) can show the same lines; the \
+             volume per atom decides"
+        ));
+        same_lines_as.push(Twin {
+            crystal_system: "cubic",
+            centring: 'I',
+            cell: [wider, wider, wider, 90.0, 90.0, 90.0],
+            volume_ratio: 4.0 * std::f64::consts::SQRT_2,
+            kind: TwinKind::ObservedLines,
+        });
+    }
     if fit.u_factor > 1.0 {
         notes.push(format!(
             "the stated s.u. of the lines were multiplied by {:.2}, after their residuals",
@@ -106,7 +125,7 @@ fn reading(
         missing,
         motif,
         formula_units: weighed.formula_units,
-        same_lines_as: exact_twins(lattice.centring, a.value),
+        same_lines_as,
         notes,
     })
 }
@@ -204,7 +223,8 @@ fn name_partners(readings: &mut [Reading], weighed: &Weighing) {
         .collect();
     for i in 0..readings.len() {
         for (j, twin) in names.iter().enumerate().filter(|(j, _)| *j != i) {
-            if same_lines(&readings[i], &readings[j]) && weighed.readings[j].probability > 0.0 {
+            let likely = weighed.readings[j].probability > PARTNER_SHARE * weighed.readings[i].probability;
+            if likely && same_lines(&readings[i], &readings[j]) {
                 let volume_ratio = twin.volume_ratio / names[i].volume_ratio;
                 readings[i].same_lines_as.push(Twin { volume_ratio, ..twin.clone() });
             }
