@@ -59,7 +59,9 @@ def answer(options: argparse.Namespace, lists: Path, answers: Path) -> dict[str,
 
 def share_of_foreign(case: dict) -> str:
     share = case["impurities"] / len(case["lines"])
-    return "none" if share == 0 else next(f"to {top:.0%}" for top in (0.1, 0.15, 0.2, 0.3, 1.0) if share <= top)
+    if share == 0:
+        return "none"
+    return next((f"to {top:.0%}" for top in (0.1, 0.15, 0.2, 0.3) if share <= top), "above 30%")
 
 
 def stated(path: Path) -> float:
