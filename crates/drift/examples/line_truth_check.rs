@@ -2,7 +2,7 @@
 //!
 //! ```text
 //! line_truth_check LISTS.jsonl TRUTH.jsonl [--risk P] [--parameter a] [--limit PPM | --limit-is-truth]
-//!                  [--limit-from-u RATIO] [--space-group SG]
+//!                  [--limit-from-u RATIO] [--space-group SG] [--demand]
 //! ```
 //!
 //! First line of LISTS: `hkl`, `cell`, `wavelength_A`, `radius_mm`, `expansion_per_K`, `options`; then per list `series`,
@@ -11,7 +11,8 @@
 //!
 //! `--limit-is-truth`: L is the true change of the chosen parameter, series by series. `--limit-from-u R`: L is R times u of
 //! the series, and the difference is moved by L, which a shift of the truth would do. Printed: z of (δ − true) by cause and
-//! parameter, and rates of decisions, with two-sided 99.9 % intervals.
+//! parameter, and rates of decisions, with two-sided 99.9 % intervals. `--demand`: exit code 1 unless each interval holds its
+//! goal or lies on the good side of it: z of the five causes together 0 and 1, false decisions at most the risk, power 0.8.
 
 use drift::decide::{Tails, Tested, Verdict, decide};
 use drift::{Decision, Expansion, LineList, Options, Phase, Report, check};
@@ -39,6 +40,7 @@ struct Arguments {
     limit: f64,
     limit_is_truth: bool,
     limit_from_u: Option<f64>,
+    demand: bool,
     group: Option<String>,
 }
 
@@ -51,6 +53,7 @@ fn arguments() -> Result<Arguments> {
             "--risk" => out.risk = value()?.parse()?,
             "--parameter" => out.parameter = Some(value()?),
             "--limit" => out.limit = value()?.parse()?,
+            "--demand" => out.demand = true,
             "--limit-is-truth" => out.limit_is_truth = true,
             "--limit-from-u" => out.limit_from_u = Some(value()?.parse()?),
             "--space-group" => out.group = Some(value()?),
@@ -211,13 +214,56 @@ fn interval(hits: usize, n: usize) -> (f64, f64) {
 /// Causes that one list can tell from a change of the cell; the others are reported apart.
 const FAIR: [&str; 5] = ["stable", "cell", "anisotropic", "displacement", "temperature"];
 
-fn print(tally: &BTreeMap<String, Tally>) {
+fn together(tally: &BTreeMap<String, Tally>) -> BTreeMap<String, Vec<f64>> {
     let mut all: BTreeMap<String, Vec<f64>> = BTreeMap::new();
     for (_, entry) in tally.iter().filter(|(cause, _)| FAIR.contains(&cause.as_str())) {
         for (parameter, z) in &entry.z {
             all.entry(parameter.clone()).or_default().extend(z);
         }
     }
+    all
+}
+
+/// What misses its goal. The z of the parameter that speaks for a batch is the largest of several: no goal.
+fn missed(tally: &BTreeMap<String, Tally>, arguments: &Arguments) -> Vec<String> {
+    let mut missed = Vec::new();
+    for (parameter, z) in together(tally).iter().filter(|(name, _)| NAMES.contains(&name.as_str())) {
+        let n = z.len() as f64;
+        let mean = z.iter().sum::<f64>() / n;
+        let deviation = (z.iter().map(|x| (x - mean).powi(2)).sum::<f64>() / (n - 1.0)).sqrt();
+        if mean.abs() > WIDE * deviation / n.sqrt() {
+            missed.push(format!("z of {parameter}: mean {mean:+.4} over {n}"));
+        }
+        // The interval of a deviation is close to symmetric for the numbers of lists used here.
+        if (deviation - 1.0).abs() > WIDE / (2.0 * n).sqrt() {
+            missed.push(format!("z of {parameter}: deviation {deviation:.4} over {n}"));
+        }
+    }
+    let Some(stable) = tally.get("stable") else { return missed };
+    let n: usize = stable.decisions.iter().sum();
+    let (within, drifted) = (stable.decisions[Decision::Within as usize], stable.decisions[Decision::Drifted as usize]);
+    if interval(drifted, n).0 > arguments.risk {
+        missed.push(format!("false drifted {drifted} of {n}, risk {}", arguments.risk));
+    }
+    if arguments.limit_from_u.is_some_and(|ratio| ratio > 0.0) && interval(within, n).0 > arguments.risk {
+        missed.push(format!("false within {within} of {n}, risk {}", arguments.risk));
+    }
+    if arguments.limit_from_u.is_none() {
+        for (parameter, found) in &stable.found {
+            let hits = found.iter().filter(|f| **f).count();
+            let (low, high) = interval(hits, found.len());
+            if !(low..=high).contains(&0.8) {
+                missed.push(format!("power for {parameter}: {hits} of {}", found.len()));
+            }
+        }
+    }
+    missed
+}
+
+const NAMES: [&str; 6] = ["a", "b", "c", "alpha", "beta", "gamma"];
+
+fn print(tally: &BTreeMap<String, Tally>) {
+    let all = together(tally);
     z_table(tally.iter().map(|(cause, entry)| (cause.as_str(), &entry.z)).chain([("the five together", &all)]));
     rates(tally);
 }
@@ -295,5 +341,6 @@ fn main() -> Result<()> {
         took.as_secs_f64(),
         f64::from(count) / took.as_secs_f64()
     );
-    Ok(())
+    let missed = if arguments.demand { missed(&tally, &arguments) } else { Vec::new() };
+    if missed.is_empty() { Ok(()) } else { Err(missed.join("; ").into()) }
 }

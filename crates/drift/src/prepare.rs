@@ -4,7 +4,7 @@ use super::input::{LineList, Options};
 use super::joint::{JointLine, JointList};
 use super::report::LeftOut;
 use indexing::assign::geometry::CellModel;
-use indexing::assign::{AssignOptions, Assignment, Predicted, assign, indices, stated_u_deg};
+use indexing::assign::{AssignOptions, AssignedLine, Assignment, Predicted, assign, indices, stated_u_deg};
 use values::{Peak, Wavelength};
 
 /// s.u. that lines without one start from, degrees 2θ; the fit replaces it.
@@ -70,6 +70,7 @@ impl Common<'_> {
             ));
         }
         let stated = stated_u_deg(&list.peaks);
+        another_phase(&assignment, stated.as_deref())?;
         let mut line_keys = Vec::with_capacity(assignment.lines.len());
         let mut after = usize::MAX - 1;
         let lines = assignment.lines.iter().map(|line| {
@@ -91,6 +92,33 @@ impl Common<'_> {
         Ok(Prepared { joint, keys: line_keys, stated: stated.is_some(), assignment })
     }
 }
+
+/// Lines of another phase fit a structure too, where its reflections are dense, but few of them and badly.
+///
+/// A list is refused when less than half of its lines are explained and those miss by more than [`MISS`] of their s.u. in the
+/// mean square: a specimen with many foreign lines has enough lines that fit well, and one with s.u. that are stated too
+/// small explains most of its lines.
+fn another_phase(assignment: &Assignment, stated: Option<&[f64]>) -> Result<(), String> {
+    let explained = assignment.lines.len() + assignment.ambiguous.len();
+    let all = explained + assignment.foreign.len();
+    let square = |line: &AssignedLine| {
+        let u = stated.map_or(USUAL_U_DEG, |u| u[line.peak]).hypot(line.u_group_deg);
+        (line.difference_deg / u).powi(2)
+    };
+    let miss = (assignment.lines.iter().map(square).sum::<f64>() / assignment.lines.len().max(1) as f64).sqrt();
+    if 2 * explained < all && miss > MISS {
+        return Err(format!(
+            "only {explained} of {all} lines fit reflections of the structure, and those miss by {miss:.0} times their s.u. in the \
+             mean; they are probably lines of something else"
+        ));
+    }
+    Ok(())
+}
+
+/// Root of the mean square miss, in s.u., above which half-explained lists are refused (own choice, no source).
+const MISS: f64 = 5.0;
+/// s.u. of a line in a list that states none, for that comparison, degrees (common practice, no source).
+const USUAL_U_DEG: f64 = 0.02;
 
 /// The part of a line's s.u. that the same line shares in all lists, degrees: what the list states, but never so much
 /// that nothing is left for counting.
