@@ -7,17 +7,19 @@
 //! uncertainties of it; what stands elsewhere is foreign, what fits two lines is ambiguous, and both are listed.
 //!
 //! [`geometry`] says where lines stand, [`small`] solves the small systems; `groups` joins reflections that one maximum
-//! holds, `track` follows one list. In: positions, reflections that the structure allows, a start cell. Out: an
+//! holds, `track` follows one list, `evidence` asks whether chance would explain as much. In: positions, reflections that the structure allows, a start cell. Out: an
 //! [`Assignment`] and the cell that it supports, which is only a start for a joint fit and carries no uncertainty.
 
+mod evidence;
 pub mod geometry;
 mod groups;
 pub mod small;
 mod track;
 
-use geometry::{CellModel, Member};
+use geometry::{CellModel, Member, Positions};
 use values::{Measured, Peak, Wavelength};
 
+pub use evidence::Evidence;
 pub use groups::Predicted;
 use track::{State, Task, Tracked};
 
@@ -70,12 +72,14 @@ pub struct AssignedLine {
 pub struct ForeignLine {
     /// Index of the observed line.
     pub peak: usize,
-    /// The nearest reflection.
+    /// The nearest reflection of those that are expected; where [`too_weak`](Self::too_weak), the one that is not.
     pub nearest: [i32; 3],
     /// Observed minus calculated position of that reflection, degrees 2θ.
     pub difference_deg: f64,
     /// The reflection already has a nearer line.
     pub taken: bool,
+    /// The line stands at a reflection below [`AssignOptions::least_intensity`].
+    pub too_weak: bool,
 }
 
 /// An observed line that two or more lines of the phase explain; it takes no part in the fit.
@@ -100,6 +104,8 @@ pub struct Assignment {
     pub six: [f64; 6],
     /// Displacement over radius of the list's own fit.
     pub s_over_r: f64,
+    /// Whether the list is of the phase at all.
+    pub evidence: Evidence,
     /// What a reader should know: a second assignment that fits as well, too few lines.
     pub notes: Vec<String>,
 }
@@ -125,11 +131,8 @@ pub fn assign(
         return None;
     }
     let strongest = predicted.iter().filter_map(|p| p.intensity).fold(0.0, f64::max);
-    let visible: Vec<Predicted> = predicted
-        .iter()
-        .copied()
-        .filter(|p| p.intensity.is_none_or(|x| x >= options.least_intensity * strongest))
-        .collect();
+    let (visible, weak): (Vec<Predicted>, Vec<Predicted>) =
+        predicted.iter().partition(|p| p.intensity.is_none_or(|x| x >= options.least_intensity * strongest));
     let observed: Vec<f64> = peaks.iter().map(|p| p.two_theta.rad()).collect();
     let u: Option<Vec<f64>> = stated_u_deg(peaks).map(|u| u.into_iter().map(f64::to_radians).collect());
     let task = Task {
@@ -151,17 +154,20 @@ pub fn assign(
         share >= GOOD_SHARE && t.score >= GOOD_SCORE * observed.len() as f64
     };
     if let Some(tracked) = direct.as_ref().filter(|t| good(t)) {
-        return Some(report(&task, tracked, None));
+        return Some(report(&task, tracked, None, &weak));
     }
     let mut found: Vec<Tracked> = starts(&task, &origin).into_iter().filter_map(|s| task.track(s)).collect();
     found.extend(direct);
     found.sort_by(|x, y| y.score.total_cmp(&x.score));
     let best = found.first()?;
-    let names = |t: &Tracked| -> Vec<Option<usize>> {
-        t.pairs.iter().map(|g| g.and_then(|g| t.groups.reflections(g).first().copied())).collect()
-    };
     let rival = found[1..].iter().find(|t| t.score > best.score - RIVAL && differs(&names(best), &names(t)));
-    Some(report(&task, best, rival))
+    Some(report(&task, best, rival, &weak))
+}
+
+/// The reflection that names each line: the first predicted one of its group. (Their order within a group is that of
+/// angles, and where they coincide, such as 511 and 333 of a cubic cell, only rounding says which is first.)
+fn names(tracked: &Tracked) -> Vec<Option<usize>> {
+    tracked.pairs.iter().map(|g| g.and_then(|g| tracked.groups.reflections(g).iter().min().copied())).collect()
 }
 
 /// Two assignments differ when some line has two names; a line that one of them leaves out is no contradiction.
@@ -244,7 +250,7 @@ fn starts(task: &Task<'_>, origin: &State) -> Vec<State> {
 }
 
 /// Sorts the lines of a tracked list into assigned, ambiguous and foreign.
-fn report(task: &Task<'_>, tracked: &Tracked, rival: Option<&Tracked>) -> Assignment {
+fn report(task: &Task<'_>, tracked: &Tracked, rival: Option<&Tracked>, weak: &[Predicted]) -> Assignment {
     let first = |g: usize| tracked.groups.reflections(g).first().map_or([0; 3], |i| task.predicted[*i].hkl);
     let mut out = Assignment {
         lines: Vec::with_capacity(task.observed.len()),
@@ -252,17 +258,30 @@ fn report(task: &Task<'_>, tracked: &Tracked, rival: Option<&Tracked>) -> Assign
         ambiguous: Vec::new(),
         six: tracked.state.six,
         s_over_r: tracked.state.s_over_r,
+        evidence: evidence::evidence(task, tracked),
         notes: Vec::new(),
+    };
+    let positions = Positions::new(task.model, &tracked.state.six, task.wavelength_angstrom);
+    let at_weak = |x: f64, gate: f64| {
+        let place =
+            |p: &Predicted| Some(positions.as_ref()?.line(p.hkl.map(f64::from))?.shifted(tracked.state.s_over_r));
+        weak.iter()
+            .filter_map(|p| Some((p.hkl, x - place(p)? - tracked.state.zero)))
+            .filter(|(_, r)| r.abs() <= gate)
+            .min_by(|(_, r), (_, other)| r.abs().total_cmp(&other.abs()))
     };
     for (peak, x) in task.observed.iter().enumerate() {
         let (nearest, difference, second) = track::closest(&tracked.calculated, *x);
         let Some(group) = tracked.pairs[peak] else {
             let taken = tracked.pairs.contains(&Some(nearest)) && difference.abs() <= tracked.gates[peak];
+            let too_weak = if taken { None } else { at_weak(*x, tracked.gates[peak]) };
+            let (nearest, difference) = too_weak.unwrap_or((first(nearest), difference));
             out.foreign.push(ForeignLine {
                 peak,
-                nearest: first(nearest),
+                nearest,
                 difference_deg: difference.to_degrees(),
                 taken,
+                too_weak: too_weak.is_some(),
             });
             continue;
         };
@@ -291,21 +310,17 @@ fn report(task: &Task<'_>, tracked: &Tracked, rival: Option<&Tracked>) -> Assign
         });
     }
     if let Some(rival) = rival {
-        let mut example = String::new();
-        for (peak, (g, other)) in tracked.pairs.iter().zip(&rival.pairs).enumerate() {
-            let (Some(g), Some(other)) = (g, other) else { continue };
-            let name = rival.groups.reflections(*other).first().map_or([0; 3], |i| task.predicted[*i].hkl);
-            if name != first(*g) {
-                example = format!(
-                    ", for example {} instead of {} at {:.3}°",
-                    indices(name),
-                    indices(first(*g)),
-                    task.observed[peak].to_degrees()
-                );
-                break;
-            }
-        }
-        out.notes.push(format!("another assignment of the lines fits nearly as well{example}"));
+        let contradiction = names(tracked).into_iter().zip(names(rival)).enumerate();
+        let example = contradiction.into_iter().find_map(|(peak, pair)| match pair {
+            (Some(one), Some(two)) if one != two => Some(format!(
+                ", for example {} instead of {} at {:.3}°",
+                indices(task.predicted[two].hkl),
+                indices(task.predicted[one].hkl),
+                task.observed[peak].to_degrees()
+            )),
+            _ => None,
+        });
+        out.notes.push(format!("Another assignment of the lines fits nearly as well{}.", example.unwrap_or_default()));
     }
     out
 }

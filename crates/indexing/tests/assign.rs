@@ -202,6 +202,56 @@ fn a_list_without_uncertainties_is_assigned_from_its_own_scatter() {
 }
 
 #[test]
+fn a_line_at_a_reflection_too_weak_to_be_expected_is_said_to_stand_there() {
+    let mut phase = oxide();
+    let lines = observed(&phase, &phase.cell, 0.0002, 0.01, 145.0);
+    let weak = lines[3].0;
+    for p in &mut phase.predicted {
+        p.intensity = Some(if p.hkl == weak { 1e-6 } else { 1.0 });
+    }
+    let found = run(&phase, &phase.cell, &peaks(&lines));
+    assert_eq!(found.foreign.len(), 1);
+    let foreign = &found.foreign[0];
+    assert_eq!((foreign.peak, foreign.nearest, foreign.too_weak), (3, weak, true));
+    assert!(foreign.difference_deg.abs() < 0.01, "{foreign:?}");
+    assert!(!run(&oxide(), &phase.cell, &peaks(&lines)).lines.is_empty());
+}
+
+#[test]
+fn two_names_of_one_place_in_every_cell_are_no_second_assignment() {
+    // 511 and 333 coincide in every cubic cell. Half of the lines stand beside their places, so that the search runs.
+    let phase = oxide();
+    let mut lines = peaks(&observed(&phase, &phase.cell, 0.0002, 0.0, 145.0));
+    assert!(phase.predicted.iter().any(|p| p.hkl == [5, 1, 1]) && phase.predicted.iter().any(|p| p.hkl == [3, 3, 3]));
+    let beside: Vec<Peak> =
+        lines.iter().map(|p| Peak::at(TwoTheta::from_deg(p.two_theta.deg() + 0.35)).with_u_deg(0.0015)).collect();
+    lines.extend(beside);
+    lines.sort_by(|x, y| x.two_theta.deg().total_cmp(&y.two_theta.deg()));
+    for shift in [0.0, 0.001, 0.002, 0.003] {
+        let start = scaled(&phase.cell, [1.0 + shift; 3]);
+        let found = run(&phase, &start, &lines);
+        assert!(found.notes.iter().all(|n| !n.contains("3 3 3") && !n.contains("5 1 1")), "{:?}", found.notes);
+    }
+}
+
+#[test]
+fn evidence_parts_a_list_of_the_phase_with_as_many_strangers_from_a_list_at_random() {
+    let phase = oxide();
+    let genuine = peaks(&observed(&phase, &phase.cell, 0.0, 0.0, 145.0));
+    let strangers = [25.0, 31.3, 39.9, 44.1, 52.8, 64.2, 73.3, 84.9, 92.0, 101.1, 111.4, 121.8];
+    let random: Vec<Peak> = strangers.map(|x| Peak::at(TwoTheta::from_deg(x)).with_u_deg(0.0015)).to_vec();
+    let mut mixed: Vec<Peak> = genuine[..5].iter().chain(&random).copied().collect();
+    mixed.sort_by(|x, y| x.two_theta.deg().total_cmp(&y.two_theta.deg()));
+    let evidence = run(&phase, &phase.cell, &mixed).evidence;
+    assert_eq!((evidence.lines, evidence.explained), (17, 5));
+    assert!(evidence.chance < 1e-2, "{evidence:?}");
+    let model = CellModel::new(&phase.system, &phase.cell).unwrap();
+    let six = phase.cell.parameters();
+    let found = assign(&random, &phase.predicted, &model, &six, copper(), &AssignOptions::default());
+    assert!(found.is_none_or(|f| f.evidence.chance > 0.1), "random lines look like the phase");
+}
+
+#[test]
 fn nothing_comes_of_no_lines_or_no_reflections() {
     let phase = oxide();
     let model = CellModel::new(&phase.system, &phase.cell).unwrap();

@@ -110,3 +110,35 @@ fn lines_of_random_cells_find_their_reflections_in_every_system() {
     // Two axes may be so alike that the start cell swaps them: one list in fifty is allowed to fail.
     assert!(bad.len() * 50 <= lists, "{} of {lists}: {bad:#?}", bad.len());
 }
+
+#[test]
+fn lists_thrown_at_random_look_like_the_phase_no_more_often_than_their_evidence_says() {
+    let mut draws = Draws(78);
+    let (mut lists, mut rare, mut rarer) = (0, 0, 0);
+    for symbol in ["F m -3 m", "I 4/m m m", "P 63 m c", "R -3 c", "P n m a", "P 1 21/c 1"] {
+        let (group, _) = SpaceGroup::from_symbol(symbol).unwrap();
+        let system = AxisSystem::from_group(&group);
+        for trial in 0..60 {
+            let cell = random_cell(&system, &mut draws);
+            let all = reflections(&cell, &group, 0.8, f64::INFINITY).unwrap();
+            let predicted: Vec<Predicted> = all.iter().map(|r| Predicted { hkl: r.hkl, intensity: None }).collect();
+            let count = 5 + trial % 15;
+            let mut positions: Vec<f64> = (0..count).map(|_| 20.0 + 100.0 * draws.uniform()).collect();
+            positions.sort_by(f64::total_cmp);
+            let peaks: Vec<Peak> =
+                positions.iter().map(|x| Peak::at(TwoTheta::from_deg(*x)).with_u_deg(0.002)).collect();
+            let model = CellModel::new(&system, &cell).unwrap();
+            let six = cell.parameters();
+            let chance = assign(&peaks, &predicted, &model, &six, copper(), &AssignOptions::default())
+                .map_or(f64::INFINITY, |found| found.evidence.chance);
+            lists += 1;
+            rare += usize::from(chance < 0.1);
+            rarer += usize::from(chance < 0.01);
+        }
+    }
+    // A bound of a chance p is met at most in a share p of random lists, within 3.29 deviations.
+    for (count, p) in [(rare, 0.1), (rarer, 0.01)] {
+        let mean = p * f64::from(lists);
+        assert!(count as f64 <= mean + 3.2905 * mean.sqrt(), "{count} of {lists} below {p}");
+    }
+}
