@@ -1,6 +1,6 @@
 //! Results as pictures and as a page: from the numeric crates' values to what `figures` draws.
 
-use drift::report::Delta;
+use drift::report::{BatchReport, Delta};
 use drift::{Decision, Report};
 use figures::{
     CalculatedLine, CellParameter, DriftDecision, DriftFigure, DriftPoint, DriftUnit, IndexedFigure, LineKind, Merit,
@@ -41,7 +41,7 @@ pub fn predicted(
                     two_theta_deg: r.two_theta.deg(),
                     d_angstrom: r.d_angstrom,
                     intensity: r.intensity,
-                    hkl: table::hkl(r.hkl),
+                    hkl: table::hkl(r.label),
                 })
                 .collect()
         })
@@ -96,7 +96,7 @@ pub fn indexed(answer: &CubicAnswer, peaks: &[Peak], radiation: &Radiation) -> R
                         calculated_deg,
                         hkl: line.hkl.first().map(|hkl| table::hkl(*hkl)).unwrap_or_default(),
                     },
-                    (Status::Satellite { name, .. }, _) => LineKind::Ghost { of: name.clone() },
+                    (Status::Satellite { name, .. }, _) => LineKind::Ghost { of: table::radiation(name) },
                     _ => LineKind::Unindexed,
                 },
             },
@@ -146,40 +146,50 @@ pub fn indexed(answer: &CubicAnswer, peaks: &[Peak], radiation: &Radiation) -> R
     drawn(figures::indexed_lines(&figure))
 }
 
-/// The drift chart, of the parameter that stands for most batches.
+/// The drift chart: for each batch the parameter that speaks for it. Where these differ, its name stands behind the batch.
 ///
 /// # Errors
 /// The picture can't be drawn.
 pub fn drift(report: &Report, phase: &str) -> Result<String, Failure> {
-    let parameter = charted(report);
-    let points: Vec<DriftPoint> = report
-        .batches
+    let usual = charted(report);
+    // Lengths share one axis; an angle has its own unit, and then one parameter is drawn for all.
+    let one = report.batches.iter().filter_map(|b| b.headline()).any(|d| d.in_deg);
+    let shown = |batch: &BatchReport| {
+        if one { batch.deltas.iter().find(|d| d.parameter == usual).cloned() } else { batch.headline().cloned() }
+    };
+    let deltas: Vec<(&BatchReport, Delta)> = report.batches.iter().filter_map(|b| Some((b, shown(b)?))).collect();
+    let mixed = deltas.iter().any(|(_, d)| d.parameter != usual);
+    let points: Vec<DriftPoint> = deltas
         .iter()
-        .filter_map(|batch| {
-            let delta = batch.deltas.iter().find(|d| d.parameter == parameter)?;
-            Some(DriftPoint {
-                batch: batch.id.clone(),
-                delta: delta.delta,
-                u: delta.u,
-                coverage_factor: report.k,
-                decision: decision(batch.decision),
-            })
+        .map(|(batch, delta)| DriftPoint {
+            batch: if mixed { format!("{}: {}", batch.id, delta.parameter) } else { batch.id.clone() },
+            delta: delta.delta,
+            u: delta.u,
+            coverage_factor: report.k,
+            decision: decision(delta.decision),
         })
         .collect();
-    let any: Option<&Delta> = report.batches.iter().flat_map(|b| &b.deltas).find(|d| d.parameter == parameter);
+    let any = deltas.first().map(|(_, d)| d);
     let figure = DriftFigure {
-        title: phase.to_owned(),
-        parameter: parameter.to_owned(),
+        title: if mixed { format!("{phase}: x is the parameter named behind the batch") } else { phase.to_owned() },
+        parameter: if mixed { "x".to_owned() } else { usual.to_owned() },
         unit: if any.is_some_and(|d| d.in_deg) { DriftUnit::Degrees } else { DriftUnit::Ppm },
         reference: report.reference.id.clone(),
         limit: any.map(|d| d.limit).filter(|limit| *limit > 0.0),
         risk: Some(report.risk),
         points: &points,
     };
+    if points.is_empty() {
+        return Err(Failure::option(values::Diagnostic::new(
+            "no batch with a difference to draw",
+            "a batch whose lines give a cell",
+            "leave --svg and --html out and see the table",
+        )));
+    }
     drawn(figures::drift_chart(&figure))
 }
 
-/// The parameter that names most batches; the first free one where none does.
+/// The parameter that speaks for most batches; the first free one where none does.
 fn charted(report: &Report) -> &'static str {
     let count = |name: &str| report.batches.iter().filter_map(|b| b.headline()).filter(|d| d.parameter == name).count();
     report.parameters.iter().copied().rev().max_by_key(|name| count(name)).unwrap_or("a")

@@ -35,6 +35,38 @@ pub fn hkl(hkl: [i32; 3]) -> String {
     }
 }
 
+/// Several triples in one field.
+pub fn hkl_list(list: &[[i32; 3]]) -> String {
+    list.iter().map(|h| hkl(*h)).collect::<Vec<_>>().join(", ")
+}
+
+/// A line of a tube as people write it: `Cu Kα2`, `W Lα1`, `Cu Kβ1,3` for `Cu Ka2`, `W La1`, `Cu Kb1,3`.
+pub fn radiation(name: &str) -> String {
+    let name = name.replace("Ka", "Kα").replace("Kb", "Kβ").replace("La", "Lα").replace("Lb", "Lβ");
+    if name.ends_with("β13") { name.replace("β13", "β1,3") } else { name }
+}
+
+/// Columns that running text fills.
+const TEXT_WIDTH: usize = 110;
+
+/// A sentence or several as lines that fit a page; every line after the first is indented by `indent` blanks, as is the first.
+pub fn paragraph(text: &str, indent: usize) -> String {
+    let margin = " ".repeat(indent);
+    let (mut lines, mut line) = (String::new(), String::new());
+    for word in text.split(' ') {
+        if !line.is_empty() && indent + line.chars().count() + 1 + word.chars().count() > TEXT_WIDTH {
+            lines.push_str(&format!("{margin}{line}\n"));
+            line.clear();
+        }
+        if !line.is_empty() {
+            line.push(' ');
+        }
+        line.push_str(word);
+    }
+    lines.push_str(&format!("{margin}{line}\n"));
+    lines
+}
+
 /// A remark as a sentence: with a capital where it begins with a plain word, and a full stop.
 pub fn sentence(text: &str) -> String {
     let word = text.split(' ').next().unwrap_or_default();
@@ -53,7 +85,7 @@ pub fn csv_field(text: &str) -> String {
 
 #[cfg(test)]
 mod tests {
-    use super::{csv_field, hkl, sentence, table};
+    use super::{csv_field, hkl, paragraph, radiation, sentence, table};
 
     #[test]
     fn indices_are_parted_only_where_they_must_be() {
@@ -66,6 +98,22 @@ mod tests {
     fn fields_with_commas_and_quotes_are_quoted() {
         assert_eq!(csv_field("a"), "a");
         assert_eq!(csv_field("a,\"b\""), "\"a,\"\"b\"\"\"");
+    }
+
+    #[test]
+    fn running_text_is_broken_between_words_and_loses_none() {
+        let text = "one two three ".repeat(30);
+        let broken = paragraph(text.trim(), 2);
+        assert!(broken.lines().all(|line| line.starts_with("  o") || line.starts_with("  t")));
+        assert!(broken.lines().all(|line| line.chars().count() <= 110));
+        assert_eq!(broken.split_whitespace().collect::<Vec<_>>(), text.split_whitespace().collect::<Vec<_>>());
+    }
+
+    #[test]
+    fn lines_of_a_tube_are_written_with_greek_letters() {
+        assert_eq!(radiation("Cu Ka2"), "Cu Kα2");
+        assert_eq!(radiation("Cu Kb13"), "Cu Kβ1,3");
+        assert_eq!(radiation("W La1"), "W Lα1");
     }
 
     #[test]

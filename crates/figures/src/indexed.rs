@@ -268,7 +268,7 @@ fn entries(figure: &IndexedFigure<'_>) -> Vec<Entry<'static>> {
     let kinds = [
         (LineKind::Indexed { calculated_deg: 0.0, hkl: String::new() }, "observed, indexed"),
         (LineKind::Unindexed, "observed, not indexed (?)"),
-        (LineKind::Ghost { of: String::new() }, "observed, ghost of another line"),
+        (LineKind::Ghost { of: String::new() }, "observed, satellite of another line"),
     ];
     for (kind, text) in kinds {
         let same = |line: &ObservedLine| std::mem::discriminant(&line.kind) == std::mem::discriminant(&kind);
@@ -295,7 +295,7 @@ fn caption(figure: &IndexedFigure<'_>, left_out: usize) -> Vec<String> {
         text.push_str(&format!(", {unindexed} not indexed"));
     }
     if ghosts > 0 {
-        text.push_str(&format!(", {}", count(ghosts, "ghost", "ghosts")));
+        text.push_str(&format!(", {}", count(ghosts, "satellite", "satellites")));
     }
     text.push_str(". Bars below are ± u of the observed position.");
     if left_out > 0 {

@@ -28,6 +28,8 @@ pub struct PredictOptions {
 pub struct PredictedReflection {
     /// The largest triple among the equivalents.
     pub hkl: [i32; 3],
+    /// The triple that people write: of the equivalents with the fewest minus signs the largest (110, where `hkl` is 2 -1 0).
+    pub label: [i32; 3],
     /// Number of equivalents under the Laue class.
     pub multiplicity: u32,
     /// Spacing, Å.
@@ -128,6 +130,7 @@ fn predict_phase(
             let angular = lorentz_polarisation(theta, options.polarisation) * options.slit.factor(theta);
             Some(PredictedReflection {
                 hkl: reflection.hkl,
+                label: label(structure, reflection.hkl),
                 multiplicity: reflection.multiplicity,
                 d_angstrom: reflection.d,
                 two_theta,
@@ -146,4 +149,14 @@ fn predict_phase(
         reflections,
         notes: structure.notes.iter().chain(model.notes()).cloned().collect(),
     })
+}
+
+/// The usual triple for people, of the equivalents under the Laue class.
+fn label(structure: &Structure, hkl: [i32; 3]) -> [i32; 3] {
+    if hkl.iter().all(|x| *x >= 0) {
+        return hkl;
+    }
+    let minus_signs = |h: &[i32; 3]| h.iter().filter(|x| **x < 0).count();
+    let equivalents = structure.group.equivalents(hkl);
+    equivalents.into_iter().min_by_key(|h| (minus_signs(h), std::cmp::Reverse(*h))).unwrap_or(hkl)
 }

@@ -130,10 +130,13 @@ pub fn check(args: &CheckArgs) -> Result<Done, Failure> {
         Err(DriftError::Input(message)) => Err(Failure::option(message)),
         Err(DriftError::NoAnswer(message)) => {
             let mut outputs = Outputs::default();
+            let sentence = format!("No answer: {}. Expected {}; {}.", message.found, message.expected, message.mend);
             if args.output.json {
-                outputs.print(&(render::empty_json(args.limit_ppm, args.risk, &message).to_string() + "\n"));
+                outputs.print(&(render::empty_json(args.limit_ppm, args.risk, &sentence).to_string() + "\n"));
+            } else {
+                outputs.print(&crate::table::paragraph(&sentence, 0));
             }
-            Ok(Done { outputs, exit_code: 3, remarks: vec![format!("no answer: {message}")] })
+            Ok(Done { outputs, exit_code: 3, remarks: Vec::new() })
         }
     }
 }
@@ -190,12 +193,12 @@ fn read_list(
     peaks.retain(|peak| !args.exclude.iter().any(|(from, to)| (*from..=*to).contains(&peak.two_theta.deg())));
     let entry = log.and_then(|log| log.entry(&id));
     if log.is_some() && entry.is_none() {
-        notes.push(format!("{id} is not in the log: its temperature is unknown."));
+        notes.push(format!("Batch {id} is not in the log: its temperature is unknown."));
     }
     let temperature_c = entry.and_then(|entry| {
         let celsius = entry.temperature_c?;
         if entry.u_temperature_c.is_none() {
-            notes.push(format!("{id}: the log gives no u_temperature_C; its temperature is taken as exact."));
+            notes.push(format!("Batch {id}: the log gives no u_temperature_C; its temperature is taken as exact."));
         }
         Some(Measured::new(celsius, entry.u_temperature_c.unwrap_or(0.0)))
     });

@@ -317,7 +317,7 @@ pub fn human(phases: &[PhasePrediction], all: bool, radiation: &str, notes: &[St
             let _ = writeln!(text, "  mass fraction {:.4}", phase.mass_fraction);
         }
         for note in &phase.notes {
-            let _ = writeln!(text, "  {}", table::sentence(note));
+            text.push_str(&table::paragraph(&table::sentence(note), 2));
         }
     }
     for note in notes {
@@ -341,7 +341,7 @@ pub fn human(phases: &[PhasePrediction], all: bool, radiation: &str, notes: &[St
         .iter()
         .map(|(name, r)| {
             let mut row = vec![
-                table::hkl(r.hkl),
+                table::hkl(r.label),
                 r.multiplicity.to_string(),
                 format!("{:.5}", r.d_angstrom),
                 format!("{:.4}", r.two_theta.deg()),

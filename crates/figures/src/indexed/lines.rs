@@ -79,7 +79,7 @@ pub(super) fn name(figure: &IndexedFigure<'_>, line: &ObservedLine) -> String {
             format!("hkl {hkl}, observed − calculated {:+.4}°", line.two_theta_deg - calculated_deg)
         }
         LineKind::Unindexed => "not indexed".to_owned(),
-        LineKind::Ghost { of } => format!("ghost: {of}"),
+        LineKind::Ghost { of } => format!("satellite: {of}"),
     };
     format!("2θ {position}°{d}{intensity}; {what}")
 }

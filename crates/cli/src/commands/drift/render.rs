@@ -5,14 +5,14 @@ use std::fmt::Write as _;
 use drift::report::{BatchReport, Delta, Displacement, LeftOut, LineReport, ListReport};
 use drift::{Decision, Report};
 use serde_json::{Map, Value, json};
-use values::{Diagnostic, Measured};
+use values::Measured;
 
 use crate::table;
 
 /// The document when there is no answer: no batch was decided.
-pub fn empty_json(limit_ppm: f64, risk: f64, reason: &Diagnostic) -> Value {
+pub fn empty_json(limit_ppm: f64, risk: f64, reason: &str) -> Value {
     json!({"schema": "latticewright.drift/1", "limit_ppm": limit_ppm, "risk": risk, "rule": null, "batches": [],
-           "notes": [format!("{reason}")], "release": drift::report::RELEASE})
+           "notes": [reason], "release": drift::report::RELEASE})
 }
 
 /// The JSON document.
@@ -152,7 +152,7 @@ pub fn csv(report: &Report) -> String {
 pub fn human(report: &Report, radiation: &str, phase: &str, notes: &[String], lines: bool) -> String {
     let mut text = String::new();
     let _ = writeln!(text, "{phase}, {radiation}: batches against {}", report.reference.id);
-    let _ = writeln!(text, "{}", report.rule);
+    text.push_str(&table::paragraph(&report.rule, 0));
     if let Some(celsius) = report.temperature_c {
         let _ = writeln!(text, "Cells are brought to {celsius} °C.");
     }
@@ -161,33 +161,38 @@ pub fn human(report: &Report, radiation: &str, phase: &str, notes: &[String], li
     text.push('\n');
     for batch in &report.batches {
         if telling(batch) {
-            let _ = writeln!(
-                text,
-                "{}: {}",
-                batch.id,
-                batch.statement.strip_prefix(&format!("{}: ", batch.id)).unwrap_or(&batch.statement)
-            );
+            let prefix = format!("{}: ", batch.id);
+            let statement = batch.statement.strip_prefix(&prefix).unwrap_or(&batch.statement);
+            text.push_str(&table::paragraph(&format!("{prefix}{statement}"), 0));
         }
         for note in batch.notes.iter().chain(batch.list.iter().flat_map(|l| &l.notes)) {
-            let _ = writeln!(text, "{}: {note}", batch.id);
+            text.push_str(&table::paragraph(&format!("{}: {note}", batch.id), 0));
         }
-        for left in batch.list.iter().flat_map(|l| l.foreign.iter().chain(&l.ambiguous)) {
-            let _ = writeln!(text, "{}: line at {:.4}° left out, {}", batch.id, left.observed_deg, left.reason);
+    }
+    for list in lists(report) {
+        for left in list.foreign.iter().chain(&list.ambiguous) {
+            let remark = format!("{}: line at {:.4}° left out, {}", list.id, left.observed_deg, left.reason);
+            text.push_str(&table::paragraph(&remark, 0));
         }
     }
     text.push('\n');
     text.push_str(&cells(report));
     let _ = writeln!(text, "Zero after the fit: {}°.", report.zero_deg);
     for note in notes.iter().chain(&report.notes).chain(&report.reference.notes) {
-        let _ = writeln!(text, "{}", table::sentence(note));
+        text.push_str(&table::paragraph(&table::sentence(note), 0));
     }
     if lines {
-        for list in std::iter::once(&report.reference).chain(report.batches.iter().filter_map(|b| b.list.as_ref())) {
+        for list in lists(report) {
             text.push_str(&line_table(list));
         }
     }
     let _ = writeln!(text, "{}", report.release);
     text
+}
+
+/// The reference, then the batches that gave a cell.
+fn lists(report: &Report) -> impl Iterator<Item = &ListReport> {
+    std::iter::once(&report.reference).chain(report.batches.iter().filter_map(|b| b.list.as_ref()))
 }
 
 fn decisions(report: &Report) -> String {
@@ -244,15 +249,12 @@ fn mark(decision: Decision) -> &'static str {
 }
 
 fn cells(report: &Report) -> String {
-    let lists: Vec<&ListReport> =
-        std::iter::once(&report.reference).chain(report.batches.iter().filter_map(|b| b.list.as_ref())).collect();
     let in_mm = report.reference.displacement.in_mm;
     let mut header = vec!["list"];
     header.extend(report.parameters.iter().copied());
     header.push(if in_mm { "displacement / mm" } else { "displacement s/R" });
     header.extend(["χ²/ν", "u ×", "lines", "T / °C"]);
-    let rows: Vec<Vec<String>> = lists
-        .iter()
+    let rows: Vec<Vec<String>> = lists(report)
         .map(|list| {
             let mut row = vec![list.id.clone()];
             for name in &report.parameters {
@@ -276,7 +278,7 @@ fn line_table(list: &ListReport) -> String {
         .iter()
         .map(|l| {
             vec![
-                l.hkl.iter().map(|h| table::hkl(*h)).collect::<Vec<_>>().join(" "),
+                table::hkl_list(&l.hkl),
                 format!("{:.4}", l.observed_deg),
                 format!("{:.4}", l.calculated_deg),
                 format!("{:+.4}", l.difference_deg),

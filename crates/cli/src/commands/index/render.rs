@@ -177,7 +177,7 @@ fn status(line: &LineOfReading, context: &Context<'_>) -> String {
         Status::Unindexed => "unindexed".to_owned(),
         Status::Satellite { name, of } => {
             let strong = context.peaks.get(*of).map_or_else(String::new, |p| format!(" of {:.3}°", p.two_theta.deg()));
-            format!("{name}{strong}")
+            format!("{}{strong}", table::radiation(name))
         }
     }
 }
@@ -189,13 +189,13 @@ const SHOWN_TWINS: usize = 2;
 pub fn human(answer: &CubicAnswer, context: &Context<'_>, full: usize) -> String {
     let mut text = String::new();
     let _ = writeln!(text, "{}, {} lines, {}", context.name, context.peaks.len(), context.radiation);
-    let _ = writeln!(text, "{}", table::sentence(&answer.verdict));
+    text.push_str(&table::paragraph(&table::sentence(&answer.verdict), 0));
     if let Some(reason) = &answer.ambiguous {
-        let _ = writeln!(text, "{}", table::sentence(reason));
+        text.push_str(&table::paragraph(&table::sentence(reason), 0));
     }
     let _ = writeln!(text, "Probability that none of these is right: {:.3} (provisional).", answer.probability_none);
     for note in context.notes.iter().chain(&answer.notes) {
-        let _ = writeln!(text, "{}", table::sentence(note));
+        text.push_str(&table::paragraph(&table::sentence(note), 0));
     }
     for reading in answer.readings.iter().take(full) {
         text.push_str(&reading_text(reading, context));
@@ -280,7 +280,7 @@ fn reading_text(reading: &Reading, context: &Context<'_>) -> String {
         );
     }
     for note in &reading.notes {
-        let _ = writeln!(text, "   {}", table::sentence(note));
+        text.push_str(&table::paragraph(&table::sentence(note), 3));
     }
     let number = |x: Option<f64>, digits: usize| x.map(|x| format!("{x:.digits$}")).unwrap_or_default();
     let rows: Vec<Vec<String>> = reading
@@ -291,7 +291,7 @@ fn reading_text(reading: &Reading, context: &Context<'_>) -> String {
                 format!("{:.4}", line.two_theta_deg),
                 format!("{:.4}", line.q_ratio),
                 line.n.map(|n| n.to_string()).unwrap_or_default(),
-                line.hkl.iter().map(|hkl| table::hkl(*hkl)).collect::<Vec<_>>().join(" "),
+                table::hkl_list(&line.hkl),
                 number(line.calculated_deg, 4),
                 line.difference_deg.map(|d| format!("{d:+.4}")).unwrap_or_default(),
                 status(line, context),
