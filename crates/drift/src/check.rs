@@ -275,7 +275,7 @@ impl Comparison<'_> {
                 dof: noise.dof.is_finite().then_some(noise.dof),
             },
             lines: lines.collect(),
-            foreign: prepare::foreign(prepared, list),
+            foreign: prepare::foreign(prepared, list, self.common.options.assign.least_intensity),
             ambiguous: prepare::ambiguous(prepared, list),
             notes: describe::list_notes(prepared, noise.factor, list),
         }

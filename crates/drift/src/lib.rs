@@ -2,7 +2,7 @@
 //!
 //! [`check()`] takes a reference and batches as lists of lines, the phase, and [`Options`]; it returns a [`Report`].
 //!
-//! 1. `prepare`: each line gets its reflections (`indexing::assign`); foreign and ambiguous lines are kept aside and listed.
+//! 1. `prepare`: each line gets its reflections (`indexing::assign`); foreign and ambiguous lines are kept aside and listed. `evidence`: is the list of the phase at all.
 //! 2. `joint`: all lists are fitted at once, a cell and a displacement for each and one zero for all, so that the
 //!    covariance of a difference is exact and what is common cancels.
 //! 3. `scatter`: are the stated s.u. large enough; without s.u., what the residuals say.
@@ -18,6 +18,7 @@ pub mod report;
 
 mod check;
 mod describe;
+mod evidence;
 mod joint;
 mod prepare;
 mod scatter;

@@ -1,10 +1,11 @@
 //! From lists of lines to the lists of the joint fit.
 
+use super::evidence::admit;
 use super::input::{LineList, Options};
 use super::joint::{JointLine, JointList};
 use super::report::LeftOut;
 use indexing::assign::geometry::CellModel;
-use indexing::assign::{AssignOptions, AssignedLine, Assignment, Predicted, assign, indices, stated_u_deg};
+use indexing::assign::{AssignOptions, Assignment, Predicted, assign, indices, stated_u_deg};
 use values::{Peak, Wavelength};
 
 /// s.u. that lines without one start from, degrees 2θ; the fit replaces it.
@@ -56,21 +57,14 @@ impl Common<'_> {
             ..self.options.assign
         };
         let assignment = assign(&list.peaks, self.predicted, self.model, start, self.wavelength, &options)
-            .ok_or("no line fits a reflection of the structure")?;
+            .ok_or("no line fits the structure")?;
         let unknowns = self.model.free() + 1;
         let prior = self.options.displacement.map(|d| {
             let unit = self.options.radius_mm.unwrap_or(1.0);
             (d.value / unit, d.u / unit)
         });
-        if assignment.lines.len() + usize::from(prior.is_some()) < unknowns {
-            return Err(format!(
-                "{} of {} lines fit reflections of the structure; cell and displacement need at least {unknowns}",
-                assignment.lines.len(),
-                list.peaks.len()
-            ));
-        }
         let stated = stated_u_deg(&list.peaks);
-        another_phase(&assignment, stated.as_deref())?;
+        admit(&assignment, stated.as_deref(), unknowns, usize::from(prior.is_some()))?;
         let mut line_keys = Vec::with_capacity(assignment.lines.len());
         let mut after = usize::MAX - 1;
         let lines = assignment.lines.iter().map(|line| {
@@ -93,32 +87,12 @@ impl Common<'_> {
     }
 }
 
-/// Lines of another phase fit a structure too, where its reflections are dense, but few of them and badly.
-///
-/// A list is refused when less than half of its lines are explained and those miss by more than [`MISS`] of their s.u. in the
-/// mean square: a specimen with many foreign lines has enough lines that fit well, and one with s.u. that are stated too
-/// small explains most of its lines.
-fn another_phase(assignment: &Assignment, stated: Option<&[f64]>) -> Result<(), String> {
-    let explained = assignment.lines.len() + assignment.ambiguous.len();
-    let all = explained + assignment.foreign.len();
-    let square = |line: &AssignedLine| {
-        let u = stated.map_or(USUAL_U_DEG, |u| u[line.peak]).hypot(line.u_group_deg);
-        (line.difference_deg / u).powi(2)
-    };
-    let miss = (assignment.lines.iter().map(square).sum::<f64>() / assignment.lines.len().max(1) as f64).sqrt();
-    if 2 * explained < all && miss > MISS {
-        return Err(format!(
-            "only {explained} of {all} lines fit reflections of the structure, and those miss by {miss:.0} times their s.u. in the \
-             mean; they are probably lines of something else"
-        ));
-    }
-    Ok(())
+/// "2 of 10 lines fit the structure".
+pub(crate) fn fits(explained: usize, lines: usize) -> String {
+    let noun = if lines == 1 { "line" } else { "lines" };
+    let verb = if explained == 1 { "fits" } else { "fit" };
+    format!("{explained} of {lines} {noun} {verb} the structure")
 }
-
-/// Root of the mean square miss, in s.u., above which half-explained lists are refused (own choice, no source).
-const MISS: f64 = 5.0;
-/// s.u. of a line in a list that states none, for that comparison, degrees (common practice, no source).
-const USUAL_U_DEG: f64 = 0.02;
 
 /// The part of a line's s.u. that the same line shares in all lists, degrees: what the list states, but never so much
 /// that nothing is left for counting.
@@ -135,13 +109,20 @@ fn common_part(peak: &Peak, total_deg: f64) -> f64 {
 }
 
 /// Foreign lines for the report.
-pub(crate) fn foreign(prepared: &Prepared, list: &LineList) -> Vec<LeftOut> {
+pub(crate) fn foreign(prepared: &Prepared, list: &LineList, least_intensity: f64) -> Vec<LeftOut> {
     let describe = |line: &indexing::assign::ForeignLine| LeftOut {
         peak: line.peak,
         observed_deg: list.peaks[line.peak].two_theta.deg(),
         hkl: vec![line.nearest],
         reason: if line.taken {
             format!("second line at the place of {}", indices(line.nearest))
+        } else if line.too_weak {
+            format!(
+                "the nearest reflection, {} at {:.4}°, is too weak to be expected: below {} of the strongest",
+                indices(line.nearest),
+                list.peaks[line.peak].two_theta.deg() - line.difference_deg,
+                least_intensity
+            )
         } else {
             format!("{:+.4}° from {}, the nearest reflection", line.difference_deg, indices(line.nearest))
         },
