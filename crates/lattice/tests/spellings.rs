@@ -262,6 +262,11 @@ fn operations_that_are_no_group_are_refused() {
     assert!(without_identity.found.contains("without x,y,z"), "{without_identity}");
     let open = resolve(&statement(&["x,y,z", "-y,x-y,z", "-y,x,z"], "", "", 0), &cell).unwrap_err();
     assert!(open.found.contains("do not close"), "{open}");
+    // The powers of a shear are x+2y, x+3y and so on without end.
+    for shear in ["x+y,y,z", "x,y,z-y", "-x+y,-y,z+1/2"] {
+        let endless = resolve(&statement(&["x,y,z", shear], "", "", 0), &cell).unwrap_err();
+        assert!(endless.found.contains("do not close"), "{shear}: {endless}");
+    }
     let generators = resolve(&statement(&["x,y,z", "-y,x,z", "-x,-y,-z", "z,x,y"], "", "", 0), &cell).unwrap();
     assert_eq!((generators.group.xhm(), generators.group.operations().len()), ("P m -3 m", 48));
     assert!(generators.notes[0].contains("the 4 symmetry operations given generate 48"), "{:?}", generators.notes);
@@ -279,6 +284,27 @@ fn a_setting_outside_the_tables_keeps_its_number_and_its_operations() {
     assert_eq!(again.number(), Some(139));
     assert_eq!(SpaceGroup::from_hall(again.hall()).unwrap(), group, "{}", again.hall());
     assert!(again.xhm().starts_with("I 4/m m m ("), "{}", again.xhm());
+}
+
+#[test]
+fn the_place_of_what_is_too_long_is_the_start_of_a_character() {
+    let text = format!("P{}", "é".repeat(200));
+    for (error, offset) in
+        [(Operation::parse(&text).unwrap_err(), 199), (SpaceGroup::from_hall(&text).unwrap_err(), 119)]
+    {
+        assert_eq!(error.offset, Some(offset), "{error}");
+        assert!(text.is_char_boundary(offset), "{error}");
+    }
+}
+
+#[test]
+fn a_message_never_passes_on_the_control_characters_of_a_text() {
+    let text = "Pq\u{1b}[31m\n\0";
+    let operation = Operation::parse(text).unwrap_err();
+    let (hall, symbol) = (SpaceGroup::from_hall(text).unwrap_err(), SpaceGroup::from_symbol(text).unwrap_err());
+    for error in [operation, hall, symbol] {
+        assert!(!error.to_string().contains(char::is_control) && !error.found.is_empty(), "{error:?}");
+    }
 }
 
 proptest! {

@@ -8,11 +8,14 @@ use crate::SymmetryError;
 /// Most operations that a group has in a conventional cell: 48 rotations times 4 centring translations.
 pub(crate) const MOST_OPERATIONS: usize = 192;
 
+/// Entries of a rotation at which products saturate, so that those of a shear would seem to close.
+const SATURATED: u8 = 127;
+
 /// All products of `generators`, the identity first and the others sorted.
 ///
 /// # Errors
-/// [`SymmetryError`] when there are more than [`MOST_OPERATIONS`], or when a rotation has no inverse among whole numbers:
-/// the generators belong to no group of this kind.
+/// [`SymmetryError`] when there are more than [`MOST_OPERATIONS`], when an entry of a rotation reaches ±[`SATURATED`], or
+/// when a rotation has no inverse among whole numbers: the generators belong to no group of this kind.
 pub(crate) fn close(generators: &[Operation]) -> Result<Vec<Operation>, SymmetryError> {
     if let Some(wrong) = generators.iter().find(|generator| generator.determinant().abs() != 1) {
         return Err(SymmetryError::new(
@@ -39,7 +42,8 @@ pub(crate) fn close(generators: &[Operation]) -> Result<Vec<Operation>, Symmetry
                 if known.insert(product) {
                     group.push(product);
                 }
-                if group.len() > MOST_OPERATIONS {
+                let endless = product.rotation.as_flattened().iter().any(|entry| entry.unsigned_abs() >= SATURATED);
+                if endless || group.len() > MOST_OPERATIONS {
                     return Err(SymmetryError::new(
                         format!(
                             "operations that do not close: their products exceed {MOST_OPERATIONS}, `{product}` among them"

@@ -20,8 +20,10 @@ pub struct SymmetryError {
 }
 
 impl SymmetryError {
+    /// Control characters of a quoted text become blanks: a message is one line, and a terminal obeys no file.
     pub(crate) fn new(found: impl Into<String>, expected: impl Into<String>, mend: impl Into<String>) -> Self {
-        Self { found: found.into(), expected: expected.into(), mend: mend.into(), offset: None }
+        let found = found.into().replace(char::is_control, " ");
+        Self { found, expected: expected.into(), mend: mend.into(), offset: None }
     }
 
     pub(crate) fn at(self, offset: usize) -> Self {

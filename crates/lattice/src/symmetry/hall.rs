@@ -27,7 +27,11 @@ pub(crate) struct Hall {
 /// Reads a Hall symbol.
 pub(crate) fn parse(symbol: &str) -> Result<Hall, SymmetryError> {
     if symbol.len() > LONGEST {
-        return Err(error(LONGEST, format!("a Hall symbol of {} bytes", symbol.len()), "at most 120"));
+        return Err(error(
+            symbol.floor_char_boundary(LONGEST),
+            format!("a Hall symbol of {} bytes", symbol.len()),
+            "at most 120",
+        ));
     }
     let text: Vec<(usize, char)> = symbol.char_indices().map(|(at, c)| (at, plain(c))).collect();
     let open = text.iter().position(|(_, c)| *c == '(').unwrap_or(text.len());

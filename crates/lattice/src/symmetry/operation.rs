@@ -34,7 +34,8 @@ impl Operation {
 
     /// This operation after `first`: `x′ = R (R₁ x + t₁) + t`, translation mod 1.
     ///
-    /// Rotations of crystallographic groups have small entries; one beyond ±127 saturates, which no group survives.
+    /// Rotations of crystallographic groups have small entries; one beyond ±127 saturates, and what holds such a
+    /// rotation is refused as a group.
     #[must_use]
     pub fn after(&self, first: &Self) -> Self {
         let product = |i: usize, j: usize| -> i32 {

@@ -12,7 +12,8 @@ const EXPECTED: &str = "a triplet such as -x+1/2,y,-z";
 pub(super) fn parse(text: &str) -> Result<Operation, SymmetryError> {
     let mut reader = Reader { bytes: text.as_bytes(), at: 0, text };
     if text.len() > LONGEST {
-        return Err(reader.error_at(LONGEST, format!("an operation of {} bytes", text.len()), EXPECTED));
+        let end = text.floor_char_boundary(LONGEST);
+        return Err(reader.error_at(end, format!("an operation of {} bytes", text.len()), EXPECTED));
     }
     let quote = reader.skip_opening();
     let mut operation = Operation { rotation: [[0; 3]; 3], translation: [0; 3] };
