@@ -13,7 +13,7 @@ pub(crate) type WithDigits = (Peak, f64);
 /// intensities and areas add. A row that is repeated as it stands counts once.
 ///
 /// # Errors
-/// Rows of one position with different uncertainties: which of them holds can't be told.
+/// Rows of one position with different uncertainties: which of them holds can't be told; intensities without finite sum.
 pub(crate) fn sorted_and_joined(
     mut lines: Vec<WithDigits>,
     file: &str,
@@ -51,6 +51,14 @@ pub(crate) fn sorted_and_joined(
         let sum = |a: Option<f64>, b: Option<f64>| a.zip(b).map(|(a, b)| a + b).or(a).or(b);
         last.intensity = sum(last.intensity, line.intensity);
         last.area = sum(last.area, line.area);
+        if [last.intensity, last.area].into_iter().flatten().any(f64::is_infinite) {
+            return Err(Diagnostic::new(
+                format!("the position of row {} again, and intensities whose sum is beyond 1.8E308", last.source_line),
+                "intensities on a usual scale",
+                "correct the intensities of the two rows, or keep one of the rows",
+            )
+            .at(Location::new(file, line.source_line, 1)));
+        }
         last.fwhm_deg = if last.fwhm_deg == line.fwhm_deg { last.fwhm_deg } else { None };
         added.push(line.source_line);
     }

@@ -148,12 +148,12 @@ impl<'a> Columns<'a> {
             None => None,
         };
         let own = above_zero(get(Column::UTwoTheta));
-        let own_d = above_zero(get(Column::UD)).map(from_d);
+        let own_d = above_zero(get(Column::UD).map(from_d));
         let counting = above_zero(get(Column::UCounting));
         let model = above_zero(get(Column::UModel));
         let fwhm_deg = above_zero(get(Column::Fwhm));
         let from_digits = |u: f64| if self.position == PositionKind::D { from_d(u) } else { u };
-        let inside = u_inside.map(from_digits);
+        let inside = u_inside.map(from_digits).filter(|u| *u > 0.0);
         if inside.is_some() && (own.is_some() || own_d.is_some()) {
             return Err(Diagnostic::new(
                 "an s.u. in parentheses and another in a column of its own",
@@ -173,6 +173,14 @@ impl<'a> Columns<'a> {
             fwhm_deg,
             source_line: row.number,
         };
+        if peak.u_two_theta_deg.is_some_and(f64::is_infinite) {
+            return Err(Diagnostic::new(
+                "an s.u. beyond the largest number, 1.8E308",
+                "an s.u. far below the position itself",
+                "correct the s.u. of this row, or leave it empty",
+            )
+            .at(row.place(self.file, self.position_at, 0)));
+        }
         let half_unit = 0.5 * 10f64.powi(-self.decimals.clamp(-300, 300)) / 3f64.sqrt();
         Ok(Some((peak, from_digits(half_unit))))
     }
@@ -180,9 +188,11 @@ impl<'a> Columns<'a> {
     fn two_theta(&self, row: &Row<'_>, position: f64, wavelength: Wavelength) -> Result<TwoTheta, Diagnostic> {
         let place = || row.place(self.file, self.position_at, 0);
         let text = excerpt(row.fields[self.position_at].text);
+        // Asked of the angle in radians, where the last bits below 180° and the smallest numbers above 0° are lost.
+        let inside = |angle: &TwoTheta| angle.deg() > 0.0 && angle.deg() < 180.0;
         if self.position == PositionKind::TwoTheta {
-            if position > 0.0 && position < 180.0 {
-                return Ok(TwoTheta::from_deg(position));
+            if let Some(angle) = Some(TwoTheta::from_deg(position)).filter(inside) {
+                return Ok(angle);
             }
             return Err(Diagnostic::new(
                 format!("2θ = {text}°"),
@@ -199,19 +209,17 @@ impl<'a> Columns<'a> {
             )
             .at(place()));
         }
-        TwoTheta::from_d(position, wavelength).filter(|found| found.deg() > 0.0 && found.deg() < 180.0).ok_or_else(
-            || {
-                Diagnostic::new(
-                    format!(
-                        "d = {text} Å, less than half of the wavelength {} Å: no such line exists",
-                        wavelength.angstrom()
-                    ),
-                    format!("a spacing above {:.5} Å", wavelength.angstrom() / 2.0),
-                    "give the wavelength of the measurement, or correct the value; 2θ belongs under `two_theta_deg`",
-                )
-                .at(place())
-            },
-        )
+        TwoTheta::from_d(position, wavelength).filter(inside).ok_or_else(|| {
+            Diagnostic::new(
+                format!(
+                    "d = {text} Å, less than half of the wavelength {} Å: no such line exists",
+                    wavelength.angstrom()
+                ),
+                format!("a spacing above {:.5} Å", wavelength.angstrom() / 2.0),
+                "give the wavelength of the measurement, or correct the value; 2θ belongs under `two_theta_deg`",
+            )
+            .at(place())
+        })
     }
 
     /// 2θ and d in one row must mean the same line: otherwise the list belongs to another wavelength.

@@ -160,6 +160,20 @@ fn unknown_columns_are_left_out_and_named_but_misspelt_ones_are_refused() {
 }
 
 #[test]
+fn numbers_at_the_ends_of_the_range_are_refused_and_never_become_zero_or_infinite() {
+    assert!(refusal("two_theta_deg\n1e-323\n").contains("above 0°"));
+    assert!(refusal("two_theta_deg\n179.99999999999999\n").contains("below 180°"));
+    assert!(refusal("d_A,u_d_A\n3.1357,1e308\n").contains("an s.u. beyond the largest number"));
+    let parts = "two_theta_deg,u_counting_deg,u_model_deg\n28.4412,1.7e308,1.7e308\n";
+    assert!(refusal(parts).contains("an s.u. beyond the largest number"));
+    let sum = "two_theta_deg,intensity\n28.4412,1.5e308\n28.4412,1.6e308\n";
+    assert!(refusal(sum).contains("list.csv:3:1: the position of row 2 again"));
+    let vanishing = list("d_A;u_d_A\n1e200;1e-300\n");
+    assert_eq!(vanishing.peaks[0].u_two_theta_deg, None);
+    assert!(vanishing.notes.iter().any(|note| note.contains("row 2 have an s.u. or a width of zero")));
+}
+
+#[test]
 fn both_2theta_and_d_must_belong_to_the_wavelength() {
     let good = list("two_theta_deg,d_A\n28.4412,3.1357\n");
     assert_eq!(good.position, PositionKind::TwoTheta);
