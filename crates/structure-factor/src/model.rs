@@ -75,13 +75,15 @@ impl ScatteringModel {
     /// F² in e² per cell for each reflection, mean of the Friedel mates: `(|F(h)|² + |F(−h)|²) / 2`.
     ///
     /// # Errors
-    /// [`StructureFactorError::BeyondFit`] names the first s = 1/(2d) beyond 2 Å⁻¹.
+    /// [`StructureFactorError::BeyondFit`] names the first s = 1/(2d) beyond 2 Å⁻¹; [`StructureFactorError::BadAtom`] the
+    /// atom whose displacement (negative by far) or occupancy makes F² exceed all numbers.
     pub fn f_squared(&self, hkl: &[[i32; 3]]) -> Result<Vec<f64>, StructureFactorError> {
         let s_squared: Vec<f64> = hkl.iter().map(|&h| self.structure.cell.q(h) / 4.0).collect();
         s_squared.iter().try_for_each(|s| check_s(s.sqrt()))?;
         let largest: [i32; 3] = std::array::from_fn(|i| hkl.iter().map(|h| h[i].abs()).max().unwrap_or(0));
         if self.blocks.iter().any(|b| b.largest_exponent(largest) > LARGEST_EXPONENT) {
-            return crate::direct_sum::f_squared(&self.structure, hkl, self.energy_ev);
+            let result = crate::direct_sum::f_squared(&self.structure, hkl, self.energy_ev)?;
+            return self.finite(result, hkl);
         }
         let sums = Sums { scatterers: &self.scatterers, blocks: &self.blocks, centrosymmetric: self.centrosymmetric };
         let mut result = sums.f_squared(hkl, &s_squared, largest);
@@ -93,7 +95,29 @@ impl ScatteringModel {
                 *value = 0.0;
             }
         }
-        Ok(result)
+        self.finite(result, hkl)
+    }
+
+    /// The values as they are, or the atom that is to blame for one that is not finite.
+    fn finite(&self, values: Vec<f64>, hkl: &[[i32; 3]]) -> Result<Vec<f64>, StructureFactorError> {
+        if values.iter().all(|value| value.is_finite()) {
+            return Ok(values);
+        }
+        let mut worst = (f64::NEG_INFINITY, "");
+        for atom in &self.structure.atoms {
+            let alone = Structure { atoms: vec![atom.clone()], ..self.structure.clone() };
+            for value in crate::direct_sum::f_squared(&alone, hkl, self.energy_ev)? {
+                let size = if value.is_finite() { value } else { f64::INFINITY };
+                if size > worst.0 {
+                    worst = (size, &atom.label);
+                }
+            }
+        }
+        Err(StructureFactorError::BadAtom {
+            label: worst.1.to_owned(),
+            reason: "displacement or occupancy makes F² exceed all numbers (a displacement that is negative by far)"
+                .to_owned(),
+        })
     }
 }
 

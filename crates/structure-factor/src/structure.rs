@@ -14,7 +14,7 @@ pub struct Atom {
     pub charge: i8,
     /// Fractional coordinates x, y, z, as given (not moved onto a special position, not brought into the cell).
     pub position: [f64; 3],
-    /// Share of the sites that hold this atom, 0 to 1.
+    /// Share of the sites that hold this atom, 0 to 1; what a CIF states above 1 is kept, with a note.
     pub occupancy: f64,
     /// Displacement of the atom about its site.
     pub displacement: Displacement,

@@ -97,6 +97,19 @@ fn f2_of_everyday_structures_agrees_with_a_sum_by_separate_code() {
 }
 
 #[test]
+fn a_displacement_that_is_negative_by_far_is_refused_with_its_atom() {
+    // exp(-B s²) grows without bound for B below zero: no value, and not a NaN that goes on into a pattern.
+    let atoms = |b| vec![atom("Na", 0, [0.0; 3], 1.0), atom("Cl", 0, [0.1, 0.2, 0.3], b)];
+    for (b, fine) in [(-1.0, true), (1e9, true), (-1e9, false), (-1e300, false)] {
+        let f2 = f_squared(&structure("x", "P -1", cubic(5.0), atoms(b)), &[[1, 1, 1], [2, -1, 3]], None);
+        match f2 {
+            Ok(values) => assert!(fine && values.iter().all(|value| value.is_finite()), "{b}: {values:?}"),
+            Err(error) => assert!(!fine && error.to_string().starts_with("Cl1: "), "{b}: {error}"),
+        }
+    }
+}
+
+#[test]
 fn densities_are_those_of_the_handbook_formula() {
     // Outside: 1.66053906892 Z M / V by separate code (Python), 2e-4 relative.
     for (phase, wanted) in [("Si", 2.32904), ("NaCl", 2.16350), ("Al2O3", 3.98622), ("CaF2", 3.18143), ("W", 19.2611)] {

@@ -215,6 +215,22 @@ fn tensors_may_stand_in_the_loop_of_the_atoms_and_u_wins_over_b() {
 }
 
 #[test]
+fn an_occupancy_that_cannot_be_meant_is_refused_at_its_place() {
+    let cif = |occupancy: &str| {
+        format!(
+            "{SILICON_CELL} _space_group_IT_number 227 loop_ _atom_site_label _atom_site_fract_x _atom_site_fract_y \
+             _atom_site_fract_z _atom_site_occupancy\nSi1 0 0 0 {occupancy}\n"
+        )
+    };
+    // Percent can be meant, and is said.
+    assert!(says(&text(&cif("99.5")), "occupancy above 1, used as it stands: Si1 (99.5)"));
+    for wrong in ["-0.1", "1001", "1e308"] {
+        let refused = Structure::from_cif(cif(wrong).as_bytes(), "text.cif").unwrap_err();
+        assert!(refused.to_string().starts_with("text.cif:3:11: the occupancy"), "{wrong}: {refused}");
+    }
+}
+
+#[test]
 fn missing_zero_negative_and_huge_displacements_are_listed() {
     let structure = read("doubtful_displacements.cif");
     for words in ["B = 0 was assumed: Si2", "U = 0, as if it did not move: Si3", "Si4 (-0.0100 Å²)", "Si5 (0.8000 Å²)"]

@@ -14,6 +14,9 @@ use crate::{Atom, Displacement};
 /// Sentence on sites where nothing scatters.
 const DUMMIES: &str = "dummy atoms and vacancies were left out";
 
+/// Occupancies above this can't be meant, not even in percent or times a multiplicity (common practice, no source).
+const LARGEST_OCCUPANCY: f64 = 1000.0;
+
 /// Atoms, and for each the multiplicity that the file states.
 pub(super) struct Read {
     pub atoms: Vec<Atom>,
@@ -215,7 +218,7 @@ impl Reader<'_, '_> {
     /// Missing and `.` mean 1.
     fn occupancy(&mut self, row: usize, label: &str) -> Result<f64, Diagnostic> {
         let Some(measured) = self.table.number("_atom_site.occupancy", row)? else { return Ok(1.0) };
-        if measured.value < 0.0 {
+        if !(0.0..=LARGEST_OCCUPANCY).contains(&measured.value) {
             let found = format!("the occupancy {} of {label}", measured.value);
             return Err(self.wrong("_atom_site.occupancy", row, &found, "a share from 0 to 1"));
         }
