@@ -1,0 +1,11 @@
+//! Any text is an operation, a group, or refused with a message that helps; never a panic.
+
+#![no_main]
+
+// The same property as in the crate's own tests.
+#[path = "../../crates/lattice/tests/check/mod.rs"]
+mod check;
+
+libfuzzer_sys::fuzz_target!(|bytes: &[u8]| {
+    check::holds_for(&String::from_utf8_lossy(bytes));
+});
