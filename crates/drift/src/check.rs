@@ -2,21 +2,18 @@
 
 use super::decide::{self, Decision, Tails, Tested};
 use super::describe;
+use super::fitting::{EXACT_ZERO_DEG, Fitted, fit_all, prepare_all};
 use super::input::{DriftError, LineList, Options, Phase};
-use super::joint::{self, JointFit, JointList, ZeroPrior};
-use super::prepare::{self, Common, Keys, Prepared, UNIT_U_DEG};
+use super::joint::JointFit;
+use super::prepare::{self, Common, UNIT_U_DEG};
 use super::report::{
     BatchReport, BudgetEntry, CellValue, Delta, Displacement, LineNoise, LineReport, ListReport, RELEASE, Report,
 };
-use super::scatter::{NoNoise, Setting, Weighed, effective_dof, weigh};
-use super::temperature::{Correction, correction};
+use super::scatter::effective_dof;
+use super::temperature::{self, Correction, correction};
 use indexing::assign::geometry::CellModel;
 use values::{Diagnostic, Measured, Wavelength};
 
-/// Smallest s.u. of a zero that is called exact, degrees: far below any line's s.u., and not zero.
-const EXACT_ZERO_DEG: f64 = 1e-7;
-/// How far a batch may be from the reference, relative; more than twice what is promised.
-const BATCH_SPREAD: f64 = 0.005;
 const NAMES: [&str; 6] = ["a", "b", "c", "alpha", "beta", "gamma"];
 
 /// Compares batches with a reference.
@@ -41,139 +38,8 @@ pub fn check(
     options.checked(model.names())?;
     let common = Common { model: &model, predicted: &phase.reflections, wavelength, options };
     let (prepared, failures) = prepare_all(&common, reference, batches, phase)?;
-    let fitted = fit_all(&common, reference, batches, prepared, failures)?;
+    let fitted = fit_all(&common, reference, prepared, failures)?;
     Ok(Comparison { common, reference, batches, fitted }.report())
-}
-
-/// Lists that entered the fit, by position in it; `place` of each list (reference first) or the reason why it has none.
-struct Fitted {
-    prepared: Vec<Prepared>,
-    weighed: Weighed,
-    place: Vec<Result<usize, String>>,
-}
-
-type Failures = Vec<Option<String>>;
-
-fn prepare_all(
-    common: &Common<'_>,
-    reference: &LineList,
-    batches: &[LineList],
-    phase: &Phase,
-) -> Result<(Keyed, Failures), DriftError> {
-    let mut keys = Keys::default();
-    let start = phase.cell.parameters();
-    let first = common
-        .prepare(reference, &start, common.options.assign.cell_spread, &mut keys)
-        .map_err(|reason| no_reference(&reference.id, &reason))?;
-    let start = first.joint.six;
-    let mut all = vec![Some(first)];
-    let mut failures = vec![None];
-    for batch in batches {
-        match common.prepare(batch, &start, BATCH_SPREAD, &mut keys) {
-            Ok(prepared) => {
-                all.push(Some(prepared));
-                failures.push(None);
-            }
-            Err(reason) => {
-                all.push(None);
-                failures.push(Some(reason));
-            }
-        }
-    }
-    Ok((Keyed { all, offsets: keys.len() }, failures))
-}
-
-struct Keyed {
-    all: Vec<Option<Prepared>>,
-    offsets: usize,
-}
-
-fn no_reference(id: &str, reason: &str) -> DriftError {
-    DriftError::NoAnswer(Diagnostic::new(
-        format!("the reference {id} gives no cell: {reason}"),
-        "lines of the phase in its structure",
-        "check structure, wavelength and the list of lines",
-    ))
-}
-
-fn zero_prior(options: &Options) -> ZeroPrior {
-    ZeroPrior { value: options.zero_deg.value.to_radians(), u: options.zero_deg.u.max(EXACT_ZERO_DEG).to_radians() }
-}
-
-fn fit_all(
-    common: &Common<'_>,
-    reference: &LineList,
-    batches: &[LineList],
-    keyed: Keyed,
-    mut failures: Failures,
-) -> Result<Fitted, DriftError> {
-    let mut all = keyed.all;
-    for attempt in 0..2 {
-        let chosen: Vec<&Prepared> = all.iter().flatten().collect();
-        let mut lists: Vec<JointList> = chosen.iter().map(|p| p.joint.clone()).collect();
-        let keys: Vec<Vec<usize>> = chosen.iter().map(|p| p.keys.clone()).collect();
-        let stated: Vec<bool> = chosen.iter().map(|p| p.stated).collect();
-        let setting = Setting {
-            model: common.model,
-            zero: zero_prior(common.options),
-            wavelength_angstrom: common.wavelength.angstrom(),
-            offsets: keyed.offsets,
-            keys: &keys,
-            stated: &stated,
-        };
-        match weigh(&setting, &mut lists) {
-            Ok(weighed) => {
-                let mut at = 0;
-                let place = all.iter().zip(failures).map(|(p, failure)| match (p, failure) {
-                    (Some(_), _) => {
-                        at += 1;
-                        Ok(at - 1)
-                    }
-                    (None, reason) => Err(reason.unwrap_or_default()),
-                });
-                let place = place.collect();
-                return Ok(Fitted { prepared: all.into_iter().flatten().collect(), weighed, place });
-            }
-            Err(NoNoise::NothingLeft) => {
-                return Err(DriftError::NoAnswer(Diagnostic::new(
-                    "lists without s.u. and with no more lines than unknowns",
-                    "s.u. of the lines, or more lines than cell parameters and displacements together",
-                    "add a column u_two_theta_deg, or longer lists",
-                )));
-            }
-            Err(NoNoise::Singular) if attempt == 0 => {
-                drop_singular(common, reference, batches, &mut all, &mut failures)?;
-            }
-            Err(NoNoise::Singular) => break,
-        }
-    }
-    Err(no_reference(&reference.id, "the joint fit of all lists has no unique answer"))
-}
-
-/// Takes out the lists whose lines do not determine their unknowns.
-fn drop_singular(
-    common: &Common<'_>,
-    reference: &LineList,
-    batches: &[LineList],
-    all: &mut [Option<Prepared>],
-    failures: &mut Failures,
-) -> Result<(), DriftError> {
-    let reason = "its lines do not determine cell and displacement (directions of the lattice without a line)";
-    for (k, slot) in all.iter_mut().enumerate() {
-        let Some(prepared) = slot else { continue };
-        let mut alone = prepared.joint.clone();
-        alone.lines.iter_mut().for_each(|l| l.common = None);
-        let zero = zero_prior(common.options);
-        if joint::fit(common.model, &[alone], 0, zero, common.wavelength.angstrom()).is_none() {
-            if k == 0 {
-                return Err(no_reference(&reference.id, reason));
-            }
-            debug_assert!(k <= batches.len());
-            *slot = None;
-            failures[k] = Some(reason.to_owned());
-        }
-    }
-    Ok(())
 }
 
 struct Comparison<'a> {
@@ -204,9 +70,13 @@ impl Comparison<'_> {
             k: 2.0,
             rule: describe::rule(self.common.model, &tested, options, limit_deg),
             parameters: self.common.model.names().to_vec(),
-            zero_deg: Measured::new(fit.zero.to_degrees(), fit.u_zero().to_degrees()),
+            zero_deg: if options.zero_deg.u < EXACT_ZERO_DEG {
+                Measured::exact(options.zero_deg.value)
+            } else {
+                Measured::new(fit.zero.to_degrees(), fit.u_zero().to_degrees())
+            },
             zero_prior_deg: options.zero_deg,
-            temperature_c: expansion.filter(|_| self.reference.temperature_c.is_some()).map(|e| e.reference_c),
+            temperature_c: expansion.filter(|_| self.any_logged()).map(|e| e.reference_c),
             common_offset_deg: self.fitted.weighed.common_deg,
             reference: self.list(self.reference, 0),
             batches,
@@ -224,8 +94,14 @@ impl Comparison<'_> {
         (0..names.len()).filter(|j| self.common.options.parameter.as_deref().is_none_or(|p| p == names[*j])).collect()
     }
 
+    /// Temperatures matter once one is logged; then every list has one, if only that of a room.
+    fn any_logged(&self) -> bool {
+        self.reference.temperature_c.is_some() || self.batches.iter().any(|b| b.temperature_c.is_some())
+    }
+
     fn correction(&self, list: &LineList, slot: usize) -> Option<Correction> {
-        correction(self.common.options.expansion.as_ref(), list, slot)
+        let temperature = list.temperature_c.or_else(|| self.any_logged().then_some(temperature::ROOM_C))?;
+        correction(self.common.options.expansion.as_ref(), temperature, slot)
     }
 
     fn list(&self, list: &LineList, place: usize) -> ListReport {
@@ -277,7 +153,7 @@ impl Comparison<'_> {
             lines: lines.collect(),
             foreign: prepare::foreign(prepared, list, self.common.options.assign.least_intensity),
             ambiguous: prepare::ambiguous(prepared, list),
-            notes: describe::list_notes(prepared, noise.factor, list),
+            notes: describe::list_notes(prepared, noise, list, corrected),
         }
     }
 
@@ -334,7 +210,7 @@ impl Comparison<'_> {
             headline,
             displacement_difference: Some(difference),
             cause: Vec::new(),
-            notes: describe::temperature_notes(self.common.options, self.reference, list),
+            notes: Vec::new(),
         };
         batch.statement = describe::statement(&batch, sits.as_deref());
         batch

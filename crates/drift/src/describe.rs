@@ -4,6 +4,8 @@ use super::decide::Decision;
 use super::input::{Expansion, LineList, Options};
 use super::prepare::Prepared;
 use super::report::{BatchReport, Delta, Displacement, Report};
+use super::scatter::Noise;
+use super::temperature::ROOM_C;
 use indexing::assign::geometry::CellModel;
 use values::Measured;
 
@@ -50,16 +52,19 @@ pub(crate) fn notes(
     expansion: Option<&Expansion>,
 ) -> Vec<String> {
     let mut notes = Vec::new();
-    notes.push(format!(
-        "Absolute cells and displacements rest on a zero of {}° known beforehand; differences do not.",
-        plus_minus(report.zero_prior_deg)
-    ));
-    if !report.reference.noise.stated {
-        notes.push(format!(
-            "No s.u. of lines are stated: {:.4}° was found from the residuals of all lists, and Student's t is used.",
-            report.reference.noise.factor
-        ));
-    }
+    let zero = report.zero_prior_deg;
+    notes.push(if zero.u > 0.0 {
+        format!(
+            "Absolute cells and displacements rest on a zero of {} ± {}° known beforehand; differences do not.",
+            zero.value, zero.u
+        )
+    } else {
+        format!(
+            "Absolute cells and displacements rest on a zero of {}° taken as exact; differences do not.",
+            zero.value
+        )
+    });
+    notes.extend(without_su(report));
     if let Some(common) = report.common_offset_deg {
         notes.push(format!(
             "Residuals repeat from list to list: {common:.4}° of each line's place is taken as common (aberrations that \
@@ -87,31 +92,49 @@ pub(crate) fn notes(
     notes
 }
 
-fn plus_minus(m: Measured) -> String {
-    format!("{} ± {}", m.value, m.u)
+/// Which lists carry no s.u., what was found instead, and what follows.
+fn without_su(report: &Report) -> Option<String> {
+    let lists = || std::iter::once(&report.reference).chain(report.batches.iter().filter_map(|b| b.list.as_ref()));
+    let bare: Vec<_> = lists().filter(|l| !l.noise.stated).collect();
+    let noise = bare.first()?.noise;
+    let all = lists().count();
+    let who = if bare.len() == all {
+        "The lists carry no s.u.".to_owned()
+    } else if bare.len() == 1 {
+        format!("1 of {all} lists, {}, carries no s.u.", bare[0].id)
+    } else {
+        format!("{} of {all} lists carry no s.u.", bare.len())
+    };
+    let dof = noise.dof.unwrap_or(f64::INFINITY);
+    // Shared unknowns count by the share of them that the data determine, so this need not be whole.
+    let degrees = if dof.round() <= 1.0 { "degree" } else { "degrees" };
+    Some(format!(
+        "{who}: found from the residuals, {:.4}° with {dof:.0} {degrees} of freedom; Student's t is used.",
+        noise.factor
+    ))
 }
 
-/// Notes on one list.
-pub(crate) fn list_notes(prepared: &Prepared, factor: f64, list: &LineList) -> Vec<String> {
+/// Notes on one list. `corrected`: its cell was brought to the common temperature.
+pub(crate) fn list_notes(prepared: &Prepared, noise: Noise, list: &LineList, corrected: bool) -> Vec<String> {
     let mut notes = prepared.assignment.notes.clone();
-    if prepared.stated && factor > 1.0 {
-        notes.push(format!("Residuals are larger than the stated s.u. allow: s.u. enlarged by {factor:.2}."));
+    if prepared.stated && noise.factor > 1.0 {
+        notes.push(format!("Residuals are larger than the stated s.u. allow: s.u. enlarged by {:.2}.", noise.factor));
     }
     let without = list.peaks.iter().filter(|p| p.u_two_theta_deg.is_none()).count();
     if prepared.stated && without > 0 {
-        notes.push(format!("{without} lines state no s.u.; they take the median of the list."));
+        notes.push(if without == 1 {
+            "1 line states no s.u.; it takes the median of the list.".to_owned()
+        } else {
+            format!("{without} lines state no s.u.; they take the median of the list.")
+        });
+    }
+    if corrected && list.temperature_c.is_none() {
+        notes.push(format!(
+            "No temperature of {} is logged: it is taken as that of a room, {} ± {:.1} °C, and u holds a part for it.",
+            list.id, ROOM_C.value, ROOM_C.u
+        ));
     }
     notes
-}
-
-/// Why a batch was not brought to the temperature of the reference.
-pub(crate) fn temperature_notes(options: &Options, reference: &LineList, list: &LineList) -> Vec<String> {
-    if options.expansion.is_none() || (reference.temperature_c.is_none() && list.temperature_c.is_none()) {
-        return Vec::new();
-    }
-    let missing =
-        [(reference, "the reference"), (list, "this batch")].into_iter().find(|(l, _)| l.temperature_c.is_none());
-    missing.map(|(_, who)| format!("No temperature of {who}: the difference is as measured.")).into_iter().collect()
 }
 
 /// "sits 0.081(4) mm lower than the reference" where the difference is beyond `q` s.u.
@@ -128,31 +151,62 @@ pub(crate) fn sits(difference: &Displacement, q: f64) -> Option<String> {
     })
 }
 
+/// |z| below this is no finding, whatever the decision.
+const FOUND: f64 = 2.0;
+
 /// The finding on a batch in a sentence or two.
 pub(crate) fn statement(batch: &BatchReport, sits: Option<&str>) -> String {
-    let mut text = match batch.decision {
-        Decision::Drifted => {
-            let beyond: Vec<String> =
-                batch.deltas.iter().filter(|d| d.decision == Decision::Drifted).map(amount).collect();
-            format!("Beyond the limit: {}.", beyond.join(", "))
+    let found = |d: &Delta| d.z.abs() >= FOUND;
+    let headline = batch.headline();
+    let limit = headline.map_or(0.0, |d| d.limit);
+    let mut text = match (batch.decision, headline) {
+        (_, None) => String::new(),
+        (Decision::Drifted, _) => {
+            let drifted = batch.deltas.iter().filter(|d| d.decision == Decision::Drifted);
+            let list = drifted.map(amount).collect::<Vec<_>>().join(", ");
+            if limit > 0.0 { format!("Beyond the limit: {list}.") } else { format!("Drifted: {list}.") }
         }
-        Decision::Within => "Within the limit.".to_owned(),
-        Decision::Undecided => batch.headline().map_or_else(String::new, |d| format!("Undecided: {}.", amount(d))),
+        (Decision::Within, Some(d)) if found(d) => format!("Within the limit: {}.", amount(d)),
+        (Decision::Within, Some(d)) => format!("Within the limit, no difference found: {}.", plus_minus(d)),
+        (Decision::Undecided, Some(d)) if found(d) && limit > 0.0 => {
+            format!("Undecided: {}, and its u leaves open on which side of the limit.", amount(d))
+        }
+        (Decision::Undecided, Some(d)) if found(d) => {
+            format!("Undecided: {}, which may be chance at this risk.", amount(d))
+        }
+        (Decision::Undecided, Some(d)) if limit > 0.0 => {
+            format!("Undecided: no difference found, {}, but its u is too large for the limit.", plus_minus(d))
+        }
+        (Decision::Undecided, Some(d)) => format!("Undecided: no difference found, {}.", plus_minus(d)),
     };
     if let Some(sits) = sits {
         text += &format!(" The specimen {sits}; this is taken out of the difference.");
-        if batch.decision != Decision::Drifted {
+        if batch.decision == Decision::Within && !batch.deltas.iter().any(found) {
             text += " Lines moved for that reason, not because the cell was found to differ.";
         }
     }
     text
 }
 
+/// "a differs by 49(3) ppm"
 fn amount(delta: &Delta) -> String {
-    let change = Measured::new(delta.delta, delta.u);
-    if delta.in_deg {
-        format!("{} differs by {change}°", delta.parameter)
+    format!("{} differs by {}{}", delta.parameter, Measured::new(delta.delta, delta.u), unit(delta))
+}
+
+/// "a -0.4 ± 5.2 ppm": two digits of u, so that a null result keeps a digit of its value.
+fn plus_minus(delta: &Delta) -> String {
+    let exponent = format!("{:.1e}", delta.u).rsplit('e').next().and_then(|e| e.parse::<i32>().ok()).unwrap_or(0);
+    let places = usize::try_from(1 - exponent).unwrap_or(0);
+    let value = format!("{:.places$}", delta.delta);
+    // A value that rounds to nothing has no sign.
+    let value = if value.bytes().any(|b| b.is_ascii_digit() && b != b'0') {
+        value.as_str()
     } else {
-        format!("{} differs by {change} ppm", delta.parameter)
-    }
+        value.trim_start_matches('-')
+    };
+    format!("{} {value} ± {:.places$}{}", delta.parameter, delta.u, unit(delta))
+}
+
+fn unit(delta: &Delta) -> &'static str {
+    if delta.in_deg { "°" } else { " ppm" }
 }

@@ -2,8 +2,15 @@
 //!
 //! In the difference of two lists the readings of the thermometer are independent, each with α u(T); the expansion is one
 //! for both, so its part is u(α) times the difference of the two temperatures. A common error of the thermometer cancels.
+//!
+//! Once any list of a check logs a temperature, a list without one is taken to be at that of a room, [`ROOM_C`]: correcting
+//! one list and not the other would make all of its expansion look like drift.
 
-use super::input::{Expansion, LineList};
+use super::input::Expansion;
+use values::Measured;
+
+/// Temperature of a list that logs none, °C: anywhere within ±5 °C of 22.5 °C, u = 5/√3 (common practice, no source).
+pub(crate) const ROOM_C: Measured = Measured { value: 22.5, u: 2.886_751_345_948_129 };
 
 /// A list's correction for one axis, in relative units.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -18,9 +25,9 @@ pub(crate) struct Correction {
     pub u_alpha: f64,
 }
 
-/// Correction of an axis (0 to 2) to the reference temperature; `None` without expansion or temperature, or for an angle.
-pub(crate) fn correction(expansion: Option<&Expansion>, list: &LineList, slot: usize) -> Option<Correction> {
-    let (expansion, temperature) = (expansion?, list.temperature_c?);
+/// Correction of an axis (0 to 2) to the reference temperature; `None` without expansion or for an angle.
+pub(crate) fn correction(expansion: Option<&Expansion>, temperature: Measured, slot: usize) -> Option<Correction> {
+    let expansion = expansion?;
     let alpha = expansion.per_k.get(slot)?;
     let warmer = temperature.value - expansion.reference_c;
     let growth = 1.0 + alpha.value * warmer;
@@ -34,18 +41,18 @@ pub(crate) fn correction(expansion: Option<&Expansion>, list: &LineList, slot: u
 
 #[cfg(test)]
 mod tests {
-    use super::{Expansion, LineList, correction};
+    use super::{Expansion, correction};
     use values::Measured;
 
     #[test]
     fn ten_kelvin_above_the_reference_shrink_the_cell_by_ten_alpha() {
         let expansion = Expansion { per_k: [Measured::new(1e-5, 1e-6); 3], reference_c: 22.5 };
-        let list = LineList { id: "x".into(), peaks: vec![], temperature_c: Some(Measured::new(32.5, 0.3)) };
-        let c = correction(Some(&expansion), &list, 2).unwrap();
+        let warm = Measured::new(32.5, 0.3);
+        let c = correction(Some(&expansion), warm, 2).unwrap();
         // By hand: −ln(1 + 1e-4), 1e-5 · 0.3 / 1.0001, 10 / 1.0001.
         assert!((c.shift + 9.999_500_033e-5).abs() < 1e-13);
         assert!((c.u_temperature - 3e-6 / 1.0001).abs() < 1e-18);
         assert!((c.by_alpha + 10.0 / 1.0001).abs() < 1e-12);
-        assert_eq!(correction(Some(&expansion), &list, 3), None);
+        assert_eq!(correction(Some(&expansion), warm, 3), None);
     }
 }

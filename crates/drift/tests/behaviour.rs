@@ -1,96 +1,15 @@
 //! What a check must do with zero, displacement, temperature, wrong s.u. and strange lines.
-//!
-//! Lists are invented here: positions from `lattice::Cell::d`, Bragg's law and `instrument::shift`, noise from a fixed seed.
 
 #![allow(clippy::unwrap_used, reason = "what a fixture does not hold fails the test")]
+
+mod made;
 
 use drift::{Decision, DriftError, Expansion, LineList, Options, Phase, Report, check};
 use indexing::assign::Predicted;
 use instrument::shift;
 use lattice::{AxisSystem, Cell};
-use values::{Measured, Peak, TwoTheta, Wavelength};
-
-const RADIUS: f64 = 240.0;
-const LINES: [[i32; 3]; 14] = [
-    [1, 1, 1],
-    [2, 0, 0],
-    [2, 2, 0],
-    [3, 1, 1],
-    [2, 2, 2],
-    [4, 0, 0],
-    [3, 3, 1],
-    [4, 2, 0],
-    [4, 2, 2],
-    [5, 1, 1],
-    [4, 4, 0],
-    [5, 3, 1],
-    [4, 4, 2],
-    [6, 2, 0],
-];
-
-/// SplitMix64 with Box and Muller's normal numbers.
-struct Draws(u64);
-
-impl Draws {
-    fn uniform(&mut self) -> f64 {
-        self.0 = self.0.wrapping_add(0x9E37_79B9_7F4A_7C15);
-        let mut z = self.0;
-        z = (z ^ (z >> 30)).wrapping_mul(0xBF58_476D_1CE4_E5B9);
-        z = (z ^ (z >> 27)).wrapping_mul(0x94D0_49BB_1331_11EB);
-        (((z ^ (z >> 31)) >> 11) as f64 + 0.5) / (1_u64 << 53) as f64
-    }
-
-    fn normal(&mut self) -> f64 {
-        (-2.0 * self.uniform().ln()).sqrt() * (std::f64::consts::TAU * self.uniform()).cos()
-    }
-}
-
-fn copper() -> Wavelength {
-    Wavelength::from_angstrom(1.5405929).unwrap()
-}
-
-fn phase() -> Phase {
-    Phase {
-        system: AxisSystem::Cubic,
-        cell: Cell::cubic(5.42).unwrap(),
-        reflections: LINES.iter().map(|h| Predicted { hkl: *h, intensity: None }).collect(),
-    }
-}
-
-fn options() -> Options {
-    Options { radius_mm: Some(RADIUS), ..Options::default() }
-}
-
-/// What a list is made of.
-#[derive(Clone, Copy)]
-struct Batch {
-    ppm: f64,
-    displacement_mm: f64,
-    zero_deg: f64,
-    /// Real noise over stated s.u.
-    noise: f64,
-}
-
-const STILL: Batch = Batch { ppm: 0.0, displacement_mm: 0.0, zero_deg: 0.01, noise: 1.0 };
-const U_DEG: f64 = 0.001;
-
-fn list(id: &str, batch: Batch, draws: &mut Draws) -> LineList {
-    let cell = Cell::cubic(5.42 * (1.0 + 1e-6 * batch.ppm)).unwrap();
-    let peaks = LINES.iter().map(|hkl| {
-        let bragg = TwoTheta::from_d(cell.d(*hkl), copper()).unwrap();
-        let shifted = bragg.deg() + shift::displacement_deg(bragg, batch.displacement_mm, RADIUS) + batch.zero_deg;
-        Peak::at(TwoTheta::from_deg(shifted + U_DEG * batch.noise * draws.normal())).with_u_deg(U_DEG)
-    });
-    LineList { id: id.to_owned(), peaks: peaks.collect(), temperature_c: None }
-}
-
-fn run(lists: &[LineList], options: &Options) -> Report {
-    check(&lists[0], &lists[1..], &phase(), copper(), options).unwrap()
-}
-
-fn without_u(lists: &mut [LineList]) {
-    lists.iter_mut().flat_map(|l| l.peaks.iter_mut()).for_each(|p| p.u_two_theta_deg = None);
-}
+use made::{Batch, Draws, LINES, RADIUS, STILL, U_DEG, copper, list, options, phase, run, without_u};
+use values::{Measured, Peak, TwoTheta};
 
 #[test]
 fn a_zero_that_all_lists_share_cancels_in_the_difference() {
@@ -168,11 +87,41 @@ fn a_warm_batch_is_brought_to_the_temperature_of_the_reference() {
     // By hand: 1.1e-5 (0.3, 0.4) K = 3.3 and 4.4 ppm, 2e-6 · 10 K = 20 ppm.
     let by_hand = (plain.u.powi(2) + 3.3_f64.powi(2) + 4.4_f64.powi(2) + 20.0_f64.powi(2)).sqrt();
     assert!((delta.u / by_hand - 1.0).abs() < 1e-3, "{} {by_hand}", delta.u);
-    // A batch without a temperature is compared as measured, and that is said.
+}
+
+#[test]
+fn a_list_without_a_temperature_is_taken_at_that_of_a_room_once_another_has_one() {
+    let mut draws = Draws(5);
+    let mut lists = [list("r", STILL, &mut draws), list("warm", Batch { ppm: 220.0, ..STILL }, &mut draws)];
+    let known = || Options {
+        expansion: Some(Expansion { per_k: [Measured::new(1.1e-5, 0.0); 3], reference_c: 20.0 }),
+        ..options()
+    };
+    // None is logged: as measured.
+    let plain = run(&lists, &known());
+    let measured = plain.batches[0].headline().unwrap().clone();
+    assert!((measured.delta - 220.0).abs() < 4.0 * measured.u && plain.temperature_c.is_none());
+    assert!(plain.notes.iter().any(|n| n.starts_with("No temperatures are logged")), "{:?}", plain.notes);
+    // 20 K above a room at 1.1e-5 per kelvin are 220 ppm; by hand u: 1.1e-5 times 5/√3 K and 0.4 K, 31.75 and 4.4 ppm.
+    lists[1].temperature_c = Some(Measured::new(42.5, 0.4));
+    let warm = run(&lists, &known());
+    let delta = warm.batches[0].headline().unwrap();
+    assert!(delta.delta.abs() < 4.0 * measured.u, "{delta:?}");
+    let by_hand = (measured.u.powi(2) + (11.0 * 5.0 / 3f64.sqrt()).powi(2) + 4.4_f64.powi(2)).sqrt();
+    assert!((delta.u / by_hand - 1.0).abs() < 1e-3, "{} {by_hand}", delta.u);
+    assert_eq!(warm.temperature_c, Some(20.0));
+    assert!(warm.reference.at_reference_temperature && warm.reference.temperature_c.is_none());
+    let told =
+        |notes: &[String], id: &str| notes.iter().any(|n| n.contains(&format!("No temperature of {id} is logged")));
+    assert!(told(&warm.reference.notes, "r"), "{:?}", warm.reference.notes);
+    assert!(!told(&warm.batches[0].list.as_ref().unwrap().notes, "warm"));
+    // And the other way round; a room has no drift against itself, so what is left is the change as it was made.
+    lists[0].temperature_c = Some(Measured::new(22.5, 0.3));
     lists[1].temperature_c = None;
-    let report = run(&lists, &Options { expansion: expansion(0.0), ..options() });
-    assert!((report.batches[0].headline().unwrap().delta - plain.delta).abs() < 1e-9);
-    assert!(report.batches[0].notes[0].contains("as measured"), "{:?}", report.batches[0].notes);
+    let unlogged = run(&lists, &known());
+    let delta = unlogged.batches[0].headline().unwrap();
+    assert!((delta.delta - measured.delta).abs() < 0.1 && delta.u > 31.0, "{delta:?}");
+    assert!(told(&unlogged.batches[0].list.as_ref().unwrap().notes, "warm"));
 }
 
 #[test]
@@ -295,6 +244,59 @@ fn strange_lines_are_listed_and_a_batch_of_another_phase_is_undecided() {
     assert_eq!((other.decision, other.list.is_none(), other.deltas.len()), (Decision::Undecided, true, 0));
     assert!(other.statement.starts_with("No cell:"), "{}", other.statement);
     assert_eq!(report.family.batches, 1);
+}
+
+#[test]
+fn a_batch_that_makes_the_joint_fit_singular_is_undecided_and_the_others_are_decided() {
+    // A hexagonal cell from lines without l: c is determined by nothing, however many lines there are.
+    let reflections: Vec<[i32; 3]> = vec![
+        [1, 0, 0],
+        [0, 0, 2],
+        [1, 0, 1],
+        [1, 0, 2],
+        [1, 1, 0],
+        [1, 0, 3],
+        [2, 0, 0],
+        [1, 1, 2],
+        [2, 0, 1],
+        [2, 1, 0],
+        [3, 0, 0],
+    ];
+    let cell = Cell::new(3.25, 3.25, 5.207, 90.0, 90.0, 120.0).unwrap();
+    let phase = Phase {
+        system: AxisSystem::Hexagonal,
+        cell,
+        reflections: reflections.iter().map(|h| Predicted { hkl: *h, intensity: None }).collect(),
+    };
+    let mut draws = Draws(15);
+    let mut list = |id: &str, keep: &dyn Fn(&[i32; 3]) -> bool| LineList {
+        id: id.to_owned(),
+        peaks: reflections
+            .iter()
+            .filter(|h| keep(h))
+            .map(|h| {
+                let place = TwoTheta::from_d(cell.d(*h), copper()).unwrap().deg();
+                Peak::at(TwoTheta::from_deg(place + U_DEG * draws.normal())).with_u_deg(U_DEG)
+            })
+            .collect(),
+        temperature_c: None,
+    };
+    let (all, flat) = (|_: &[i32; 3]| true, |h: &[i32; 3]| h[2] == 0);
+    let lists = [list("r", &all), list("good", &all), list("flat", &flat), list("fine", &all)];
+    let run = |lists: &[LineList]| {
+        check(&lists[0], &lists[1..], &phase, copper(), &Options { limit_ppm: 1000.0, ..options() })
+    };
+    let report = run(&lists).unwrap();
+    let decisions: Vec<Decision> = report.batches.iter().map(|b| b.decision).collect();
+    assert_eq!(decisions, [Decision::Within, Decision::Undecided, Decision::Within]);
+    assert!(report.batches[1].statement.contains("do not determine"), "{}", report.batches[1].statement);
+    let without = run(&[lists[0].clone(), lists[1].clone(), lists[3].clone()]).unwrap();
+    assert_eq!(report.batches[0].deltas, without.batches[0].deltas, "the culprit left a trace");
+    // As a reference it gives no answer, and is named.
+    match run(&[lists[2].clone(), lists[0].clone()]) {
+        Err(DriftError::NoAnswer(message)) => assert!(message.found.contains("reference flat"), "{message}"),
+        other => panic!("{other:?}"),
+    }
 }
 
 #[test]
