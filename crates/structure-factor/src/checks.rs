@@ -8,8 +8,8 @@ use crate::displacement::listed;
 use crate::expand::ExpandedSite;
 use crate::{Structure, elements, formula};
 
-/// Shorter moves are the rounding of thirds to five digits, Å.
-const SHOWN_MOVE_ANGSTROM: f64 = 1e-4;
+/// Shorter moves are the last digits of coordinates with six decimals, Å.
+const SHOWN_MOVE_ANGSTROM: f64 = 1e-5;
 /// Smaller changes of a tensor are rounding, Å².
 const SHOWN_TENSOR_CHANGE: f64 = 1e-5;
 /// Atoms closer than this share a site, Å.
@@ -18,6 +18,14 @@ const SAME_SITE_ANGSTROM: f64 = 0.1;
 const MAX_COMPARISONS: usize = 50_000_000;
 /// Most notes of one kind.
 const MAX_NOTES: usize = 40;
+
+impl Structure {
+    /// One sentence for each atom that the rule of special positions moves, and for each tensor that it averages.
+    #[must_use]
+    pub fn moves(&self) -> Vec<String> {
+        moves(self, &self.expand())
+    }
+}
 
 /// The same structure with its notes completed.
 pub(crate) fn noted(mut structure: Structure) -> Structure {
@@ -36,7 +44,7 @@ fn moves(structure: &Structure, sites: &[ExpandedSite]) -> Vec<String> {
         let label = &atom.label;
         if site.moved_angstrom > SHOWN_MOVE_ANGSTROM {
             notes.push(format!(
-                "{label} was moved by {:.4} Å onto its special position of multiplicity {}",
+                "{label} was moved by {:.5} Å onto its special position of multiplicity {}",
                 site.moved_angstrom, site.multiplicity
             ));
         }

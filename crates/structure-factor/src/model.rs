@@ -11,12 +11,8 @@ use crate::block::Block;
 use crate::block_sum::Sums;
 use crate::expand::{ExpandedSite, same_point};
 use crate::structure::{Atom, Displacement, Structure};
-use crate::tables::{ScatteringFactor, check_s, dispersion, ion_name, scattering_factor};
+use crate::tables::{ScatteringFactor, check_s, dispersion, scattering_factor};
 
-/// Below this a move of an atom is rounding of printed thirds and is not worth a note, Å.
-const MOVE_WORTH_A_NOTE_ANGSTROM: f64 = 1e-6;
-/// Below this a change of a tensor element is rounding, Å².
-const TENSOR_WORTH_A_NOTE: f64 = 1e-9;
 /// So many atoms must share one B before T is taken out of their sum; fewer carry T each.
 const SHARED_B_ATOMS: usize = 8;
 /// Exponents above this leave the range of the factored exponentials; the plain sum takes over.
@@ -57,16 +53,14 @@ impl ScatteringModel {
             kind_of_atom.push(scatterer_index(&mut scatterers, atom, energy_ev, &mut notes)?);
         }
         let sites = structure.expand();
-        for (atom, site) in structure.atoms.iter().zip(&sites) {
-            notes.extend(move_note(atom, site));
-        }
         let reduction = Reduction::of(&structure.group);
         let blocks = blocks(structure, &sites, &kind_of_atom, &reduction);
         let centrosymmetric = reduction.centre.is_some();
         Ok(Self { structure: structure.clone(), energy_ev, scatterers, blocks, centrosymmetric, notes })
     }
 
-    /// What was assumed: neutral atoms for ions that are not tabulated, edges nearby, atoms moved onto special positions.
+    /// What was assumed: neutral atoms for ions that are not tabulated, edges nearby. Moves onto special positions are in
+    /// [`Structure::moves`].
     #[must_use]
     pub fn notes(&self) -> &[String] {
         &self.notes
@@ -168,20 +162,6 @@ fn scatterer_index(
     }
     scatterers.push(Scatterer { element: atom.element.clone(), charge: atom.charge, factor, correction });
     Ok(scatterers.len() - 1)
-}
-
-fn move_note(atom: &Atom, site: &ExpandedSite) -> Option<String> {
-    let name = ion_name(&atom.element, atom.charge);
-    let moved = (site.moved_angstrom > MOVE_WORTH_A_NOTE_ANGSTROM)
-        .then(|| format!("moved by {:.6} Å onto its special position", site.moved_angstrom));
-    let tensor = (site.tensor_moved_square_angstrom > TENSOR_WORTH_A_NOTE).then(|| {
-        format!(
-            "displacement tensor averaged over the site's symmetry, by up to {:.2e} Å²",
-            site.tensor_moved_square_angstrom
-        )
-    });
-    let what: Vec<String> = moved.into_iter().chain(tensor).collect();
-    (!what.is_empty()).then(|| format!("{} ({name}): {}", atom.label, what.join("; ")))
 }
 
 /// What the symmetry takes off the sum: the centring translations, and a centre of inversion.

@@ -149,7 +149,7 @@ fn thirds_of_three_digits_are_one_atom_and_the_move_is_listed() {
     let structure = read("thirds_to_three_digits.cif");
     assert_eq!(structure.expand().iter().map(|site| site.multiplicity).collect::<Vec<_>>(), [2, 2]);
     // 0.333 and 0.667 lie (1/3000, 1/3000) from the axis: a/3000 for these axes, 0.00188 Å with the 60° between them.
-    assert!(says(&structure, "Zn1 was moved by 0.0019 Å") && says(&structure, "O1 was moved by 0.0019 Å"));
+    assert!(says(&structure, "Zn1 was moved by 0.00188 Å") && says(&structure, "O1 was moved by 0.00188 Å"));
     // What is listed as given stays as given.
     assert!((structure.atoms[0].position[0] - 0.333).abs() < 1e-12);
 }
