@@ -2,7 +2,7 @@
 //!
 //! `cargo run --release -p indexing --example index_batch -- LISTS ANSWERS [--wavelength 1.5405929] [--without-u]`
 //!
-//! LISTS holds CSV files with the header `two_theta_deg,u_two_theta_deg,intensity`; ANSWERS gets one JSON file of the same stem.
+//! LISTS holds CSV files with the columns `two_theta_deg,u_two_theta_deg` and, if known, `intensity`; ANSWERS gets one JSON file of the same stem.
 //! `--without-u` drops the s.u., to try the search as on lists that state none.
 
 use indexing::cubic::{CubicAnswer, CubicOptions, Satellite, search};
@@ -52,9 +52,13 @@ fn read(file: &Path, with_u: bool) -> Result<Vec<Peak>, Box<dyn Error>> {
     let mut peaks = Vec::new();
     for line in text.lines().skip(1) {
         let row = line.split(',').map(str::parse).collect::<Result<Vec<f64>, _>>()?;
-        let [two_theta_deg, u_deg, intensity] = row[..] else { return Err("three columns expected".into()) };
+        let (two_theta_deg, u_deg, intensity) = match row[..] {
+            [two_theta_deg, u_deg] => (two_theta_deg, u_deg, None),
+            [two_theta_deg, u_deg, intensity] => (two_theta_deg, u_deg, Some(intensity)),
+            _ => return Err("two or three columns expected".into()),
+        };
         let mut peak = Peak::at(TwoTheta::from_deg(two_theta_deg));
-        peak.intensity = Some(intensity);
+        peak.intensity = intensity;
         peaks.push(if with_u { peak.with_u_deg(u_deg) } else { peak });
     }
     Ok(peaks)
@@ -69,7 +73,7 @@ fn document(answer: &CubicAnswer, elapsed_s: f64) -> Value {
             json!({
                 "rank": r.rank, "crystal_system": "cubic", "centring": r.centring.to_string(),
                 "cell": {"a": a, "b": a, "c": a, "alpha": 90.0, "beta": 90.0, "gamma": 90.0},
-                "u_a": r.a.u, "probability": r.probability, "ln_evidence": r.ln_evidence, "zero_deg": r.zero_deg.value,
+                "u_a": r.a.u, "u_factor": r.u_factor, "probability": r.probability, "ln_evidence": r.ln_evidence, "zero_deg": r.zero_deg.value,
                 "used": r.lines.iter().filter(|l| l.n.is_some()).count(), "unindexed": r.unindexed().count(),
                 "calculated": r.calculated, "motif": r.motif,
             })

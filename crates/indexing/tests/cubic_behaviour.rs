@@ -45,7 +45,9 @@ fn certified_silicon_and_lanthanum_hexaboride_come_back_from_computed_lines() {
         let answer = search(&peaks, copper(), &CubicOptions::default()).unwrap();
         let first = &answer.readings[0];
         assert_eq!((first.centring, first.motif.is_some()), (centring, motif), "{}", answer.verdict);
-        assert!((first.a.value - a).abs() < 1e-4 && answer.ambiguous.is_none(), "{}", first.a);
+        // Three decimals leave residuals of 0.0003°: the displacement, free within its prior, carries most of the s.u.
+        assert!((first.a.value - a).abs() < 2.5 * first.a.u && first.a.u < 3e-4, "{}", first.a);
+        assert!(answer.ambiguous.is_none());
         assert!(first.probability > 0.95 && first.unindexed().count() == 0);
     }
 }

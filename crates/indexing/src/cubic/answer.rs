@@ -36,8 +36,10 @@ pub struct Reading {
     pub volume: Measured,
     /// Zero, degrees 2θ (observed = true + zero), with its s.u.; the prior enters.
     pub zero_deg: Measured,
-    /// Covariance of a (Å) and zero (degrees).
-    pub covariance: [[f64; 2]; 2],
+    /// Displacement of the specimen over the radius, s/R, with its s.u.; the prior enters.
+    pub displacement_over_radius: Measured,
+    /// Covariance of a (Å), zero (degrees) and s/R.
+    pub covariance: [[f64; 3]; 3],
     /// Degrees of freedom for Student's t, where the s.u. of the lines were found from the residuals.
     pub nu: Option<usize>,
     /// Common factor on the stated s.u. of the lines, ≥ 1.

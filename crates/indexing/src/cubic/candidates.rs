@@ -74,8 +74,10 @@ fn pairs(
     mut found: impl FnMut(f64, f64),
 ) {
     let (a, b) = (&lines.list[i], &lines.list[j]);
-    // Three s.u. of the prior on each side.
-    let (zero_mean, largest_zero_deg) = (options.zero_deg.value, 3.0 * options.zero_deg.u);
+    // Three s.u. of the prior on each side. Two lines cannot part zero and displacement: the zero stands for both here.
+    let shift = options.displacement();
+    let zero_mean = options.zero_deg.value + shift.value * a.by_displacement_deg;
+    let largest_zero_deg = 3.0 * options.zero_deg.u.hypot(shift.u * a.by_displacement_deg);
     let ratio = b.q / a.q;
     // d ln Q / d(2θ), per degree.
     let (da, db) = (a.slope / a.q, b.slope / b.q);

@@ -2,20 +2,22 @@
 //!
 //! Each line i is either one of the N lines that the lattice calculates up to the last observed one, or foreign:
 //!
-//! `p_i = (1 − ε) w_i/Σw · Normal(2θ_i; 2θ(N_i, a) + z, κ u_i) + ε g(2θ_i)`, ε = 0.1,
+//! `p_i = (1 − ε) w_i/Σw · Normal(2θ_i; 2θ(N_i, a) + z − 2 (s/R) cos θ_i, κ u_i) + ε g(2θ_i)`, ε = 0.1,
 //!
 //! w = m^¼ the visibility of a line of multiplicity m, the sum over the N lines,
 //! g the density of random lines (uniform in Q^(3/2); half of it at the place of a satellite, where one is suspected). A
 //! calculated line explains one observed line: of two, the nearer. w/Σw, about 1/N, is the price of possible lines, and with it that of lines
-//! not seen. `ln L = Σ ln(p_i/g)`. The edge has a prior uniform in ln a, the zero a normal one; both are integrated in the
-//! normal approximation, and the scale κ (or, where no s.u. are stated, the s.u. itself) is summed over a grid with its prior:
+//! not seen. `ln L = Σ ln(p_i/g)`. The edge has a prior uniform in ln a, zero z and displacement s/R normal ones; all three
+//! are integrated in the normal approximation, and the scale κ (or, where no s.u. are stated, the s.u. itself) is summed over a grid with its prior:
 //!
-//! `ln E = ln Σ_κ P(κ) exp[ln L + ln p(ln a) + ln p(z) + ½(2 ln 2π + ln det C)]`.
+//! `ln E = ln Σ_κ P(κ) exp[ln L + ln p(ln a) + ln p(z) + ln p(s/R) + ½(3 ln 2π + ln det C)]`.
 
 use super::CubicOptions;
 use super::candidates::Candidate;
 use super::lines::{Line, Lines};
+use super::normal::Normal;
 use super::sequence::{Centring, Sequence};
+use values::Measured;
 
 /// Share of foreign lines.
 pub(crate) const FOREIGN: f64 = 0.1;
@@ -31,10 +33,42 @@ pub(crate) struct Match {
     pub(crate) line: usize,
     /// Share of the calculated line among all that may be seen.
     pub(crate) share: f64,
-    /// Observed minus calculated (zero included in the calculated), degrees.
+    /// Observed minus calculated (zero and displacement included in the calculated), degrees.
     pub(crate) difference_deg: f64,
     /// Probability that the line belongs to the lattice.
     pub(crate) weight: f64,
+}
+
+/// What moves every line besides the lattice: zero and displacement.
+#[derive(Clone, Copy, Debug)]
+pub(crate) struct Shift {
+    /// Zero, degrees 2θ.
+    pub(crate) zero_deg: f64,
+    /// Displacement over radius, s/R.
+    pub(crate) displacement: f64,
+}
+
+impl Shift {
+    /// Observed minus true position of a line, degrees 2θ.
+    pub(crate) fn at_deg(self, line: &Line) -> f64 {
+        self.zero_deg + self.displacement * line.by_displacement_deg
+    }
+
+    /// Adds the priors of zero and displacement as unknowns `first` and `first + 1`.
+    pub(crate) fn priors<const K: usize>(self, normal: &mut Normal<K>, first: usize, options: &CubicOptions) {
+        let displacement = options.displacement();
+        normal.prior(first, options.zero_deg.value - self.zero_deg, options.zero_deg.u);
+        normal.prior(first + 1, displacement.value - self.displacement, displacement.u);
+    }
+
+    /// ln of the prior density of both.
+    pub(crate) fn ln_prior(self, options: &CubicOptions) -> f64 {
+        let ln_normal = |x: f64, prior: Measured| {
+            let z = (x - prior.value) / prior.u;
+            -0.5 * (z * z + (2.0 * std::f64::consts::PI).ln()) - prior.u.ln()
+        };
+        ln_normal(self.zero_deg, options.zero_deg) + ln_normal(self.displacement, options.displacement())
+    }
 }
 
 /// A refined lattice.
@@ -42,7 +76,7 @@ pub(crate) struct Match {
 pub(crate) struct Refined {
     pub(crate) centring: Centring,
     pub(crate) a: f64,
-    pub(crate) zero_deg: f64,
+    pub(crate) shift: Shift,
     /// ln E, in nats over random lines, without the priors of centring and system.
     pub(crate) ln_evidence: f64,
     /// One per line of the sorted list.
@@ -84,9 +118,15 @@ pub(crate) fn scales(stated: bool) -> Vec<(f64, f64)> {
     grid.iter().map(|x| (*x, (weight(*x) / sum).ln())).collect()
 }
 
+#[derive(Clone, Copy)]
+struct Start {
+    ln_a: f64,
+    shift: Shift,
+}
+
 struct Step {
     ln_a: f64,
-    zero: f64,
+    shift: Shift,
     ln_evidence: f64,
     lines: Vec<Match>,
 }
@@ -101,16 +141,17 @@ pub(crate) fn refine(
 ) -> Option<Refined> {
     let mut best: Option<(f64, f64, Step)> = None;
     let mut terms = Vec::with_capacity(scales.len());
-    let (mut ln_a, mut zero) = (-0.5 * start.inverse_a2.ln(), start.zero_deg);
+    let shift = Shift { zero_deg: start.zero_deg, displacement: options.displacement().value };
+    let mut from = Start { ln_a: -0.5 * start.inverse_a2.ln(), shift };
     // A candidate may be off by the window of the first look: catch its lines with a wide s.u. first.
     let narrowest = lines.list.iter().filter_map(|line| line.u_deg).fold(CAPTURE_DEG, f64::min);
     let capture = if lines.stated { CAPTURE_DEG / narrowest } else { CAPTURE_DEG };
-    let caught = at_scale(lines, sequence, ln_a, zero, capture, options)?;
-    (ln_a, zero) = (caught.ln_a, caught.zero);
+    let caught = at_scale(lines, sequence, from, capture, options)?;
+    from = Start { ln_a: caught.ln_a, shift: caught.shift };
     // From the widest scale down: each start is the end of the step before.
     for &(scale, ln_prior) in scales.iter().rev() {
-        let step = at_scale(lines, sequence, ln_a, zero, scale, options)?;
-        (ln_a, zero) = (step.ln_a, step.zero);
+        let step = at_scale(lines, sequence, from, scale, options)?;
+        from = Start { ln_a: step.ln_a, shift: step.shift };
         let term = step.ln_evidence + ln_prior;
         terms.push(term);
         if best.as_ref().is_none_or(|(most, _, _)| term > *most) {
@@ -121,15 +162,7 @@ pub(crate) fn refine(
     let ln_evidence = most + terms.iter().map(|term| (term - most).exp()).sum::<f64>().ln();
     let a = step.ln_a.exp();
     let calculated = calculated(lines, sequence, a);
-    Some(Refined {
-        centring: start.centring,
-        a,
-        zero_deg: step.zero,
-        ln_evidence,
-        lines: step.lines,
-        calculated,
-        scale,
-    })
+    Some(Refined { centring: start.centring, a, shift: step.shift, ln_evidence, lines: step.lines, calculated, scale })
 }
 
 /// Calculated lines from the start of the scan to the last observed line; one at least.
@@ -138,46 +171,30 @@ fn calculated(lines: &Lines, sequence: &Sequence, a: f64) -> usize {
     up_to.saturating_sub(sequence.count(lines.q_start * a * a)).max(1) as usize
 }
 
-fn at_scale(
-    lines: &Lines,
-    sequence: &Sequence,
-    mut ln_a: f64,
-    mut zero: f64,
-    scale: f64,
-    options: &CubicOptions,
-) -> Option<Step> {
+fn at_scale(lines: &Lines, sequence: &Sequence, start: Start, scale: f64, options: &CubicOptions) -> Option<Step> {
     let mut assigned = vec![Match::default(); lines.list.len()];
-    let prior = 1.0 / (options.zero_deg.u * options.zero_deg.u);
-    let mean = options.zero_deg.value;
-    let mut normal = [0.0; 3];
+    let Start { mut ln_a, mut shift } = start;
+    let mut ln_det = 0.0;
     for _ in 0..STEPS {
-        assign(lines, sequence, ln_a, zero, scale, &mut assigned)?;
-        // Unknowns: δ ln a and δ z. d(2θ)/d ln a = −2 tan θ (180/π) degrees; d(2θ)/dz = 1.
-        let (mut aa, mut az, mut zz, mut ra, mut rz) = (0.0, 0.0, prior, 0.0, (mean - zero) * prior);
+        assign(lines, sequence, ln_a, shift, scale, &mut assigned)?;
+        // Unknowns: δ ln a, δ zero, δ(s/R).
+        let mut normal = Normal::<3>::new();
+        shift.priors(&mut normal, 1, options);
         for (line, hit) in lines.list.iter().zip(&assigned).filter(|(_, hit)| hit.weight > 0.0) {
-            let w = hit.weight / lines.sigma_deg(line, scale).powi(2);
-            let da = slope_ln_a(line.two_theta_deg - zero);
-            aa += w * da * da;
-            az += w * da;
-            zz += w;
-            ra += w * da * hit.difference_deg;
-            rz += w * hit.difference_deg;
+            let row = [slope_ln_a(line.two_theta_deg - shift.at_deg(line)), 1.0, line.by_displacement_deg];
+            normal.add(&row, hit.weight / lines.sigma_deg(line, scale).powi(2), hit.difference_deg);
         }
-        let det = aa * zz - az * az;
-        if !(det > 0.0 && det.is_finite()) {
-            return None;
-        }
-        ln_a += (zz * ra - az * rz) / det;
-        zero += (aa * rz - az * ra) / det;
-        normal = [aa, az, zz];
+        let (change, ln) = normal.solve()?;
+        ln_a += change[0];
+        shift.zero_deg += change[1];
+        shift.displacement += change[2];
+        ln_det = ln;
     }
-    let ln_likelihood = assign(lines, sequence, ln_a, zero, scale, &mut assigned)?;
-    let [aa, az, zz] = normal;
-    let two_pi = (2.0 * std::f64::consts::PI).ln();
+    let ln_likelihood = assign(lines, sequence, ln_a, shift, scale, &mut assigned)?;
     let ln_prior_a = -(options.largest_a / options.smallest_a).ln().ln();
-    let ln_prior_zero = -0.5 * ((zero - mean).powi(2) * prior + two_pi - prior.ln());
-    let ln_evidence = ln_likelihood + ln_prior_a + ln_prior_zero + two_pi - 0.5 * (aa * zz - az * az).ln();
-    Some(Step { ln_a, zero, ln_evidence, lines: assigned })
+    let two_pi = (2.0 * std::f64::consts::PI).ln();
+    let ln_evidence = ln_likelihood + ln_prior_a + shift.ln_prior(options) + 1.5 * two_pi - 0.5 * ln_det;
+    Some(Step { ln_a, shift, ln_evidence, lines: assigned })
 }
 
 /// `d(2θ)/d ln a = −2 tan θ`, in degrees.
@@ -186,12 +203,20 @@ fn slope_ln_a(two_theta_deg: f64) -> f64 {
 }
 
 /// Gives each line its nearest calculated line and the probability that it belongs there; returns ln L.
-fn assign(lines: &Lines, sequence: &Sequence, ln_a: f64, zero: f64, scale: f64, assigned: &mut [Match]) -> Option<f64> {
+fn assign(
+    lines: &Lines,
+    sequence: &Sequence,
+    ln_a: f64,
+    shift: Shift,
+    scale: f64,
+    assigned: &mut [Match],
+) -> Option<f64> {
     let a = ln_a.exp();
     let half = lines.wavelength_angstrom / 2.0;
     let (after, last) = (lines.q_start * a * a, lines.q_last * a * a * (1.0 + 1e-3));
     for (line, hit) in lines.list.iter().zip(assigned.iter_mut()) {
-        let theta = (line.two_theta_deg - zero).to_radians() / 2.0;
+        let true_deg = line.two_theta_deg - shift.at_deg(line);
+        let theta = true_deg.to_radians() / 2.0;
         let x = (theta.sin() / half * a).powi(2);
         *hit = Match::default();
         if let Some(n) = sequence.nearest(x) {
@@ -199,7 +224,7 @@ fn assign(lines: &Lines, sequence: &Sequence, ln_a: f64, zero: f64, scale: f64, 
             if sine < 1.0 {
                 hit.line = n;
                 hit.share = sequence.share(n, after, last);
-                hit.difference_deg = line.two_theta_deg - zero - 2.0 * sine.asin().to_degrees();
+                hit.difference_deg = true_deg - 2.0 * sine.asin().to_degrees();
             }
         }
     }

@@ -18,6 +18,8 @@ pub(crate) struct Line {
     pub(crate) q: f64,
     /// dQ/d(2θ), Å⁻² per degree.
     pub(crate) slope: f64,
+    /// d(2θ)/d(s/R) = −2 cos θ, in degrees.
+    pub(crate) by_displacement_deg: f64,
     pub(crate) u_deg: Option<f64>,
     pub(crate) strength: Option<f64>,
     /// Density of random lines at this place, per degree; the integral over the list is one.
@@ -82,6 +84,7 @@ impl Lines {
                     two_theta_deg: peaks[index].two_theta.deg(),
                     q,
                     slope,
+                    by_displacement_deg: by_displacement_deg(peaks[index].two_theta),
                     u_deg: peaks[index].u_two_theta_deg,
                     strength: peaks[index].strength(),
                     // Random lines are uniform in Q^(3/2), as those of a real lattice.
@@ -129,6 +132,11 @@ impl Lines {
             }
         }
     }
+}
+
+/// `d(2θ)/d(s/R) = −2 cos θ`, in degrees.
+pub(crate) fn by_displacement_deg(two_theta: TwoTheta) -> f64 {
+    -2.0 * two_theta.theta_rad().cos().to_degrees()
 }
 
 /// The satellite that line `i` may be: `sin θ = (λ₂/λ₁) sin θ₁` of a stronger line, and weaker than the radiation allows.

@@ -14,6 +14,7 @@ mod answer;
 mod candidates;
 mod evidence;
 mod lines;
+mod normal;
 mod readings;
 mod rivals;
 mod sequence;
@@ -34,6 +35,10 @@ use values::{Measured, Peak, Wavelength};
 pub struct CubicOptions {
     /// Prior of the zero, degrees 2θ (observed = true + zero). Default 0 ± 0.05, a usual alignment (common practice, no source).
     pub zero_deg: Measured,
+    /// Prior of the specimen's displacement over the radius of the goniometer, s/R: it moves a line by −2 (s/R) cos θ; s > 0
+    /// where the surface lies too low. Default 0 ± 4·10⁻⁴, about 0.1 mm at 240 mm (common practice, no source). An s.u. of zero
+    /// fixes it.
+    pub displacement_over_radius: Measured,
     /// Where the scan began, degrees 2θ: lines below are not missed. Default: at zero.
     pub from_deg: Option<f64>,
     /// Foreign lines that are allowed whatever the length of the list. Default 4.
@@ -56,6 +61,7 @@ impl Default for CubicOptions {
     fn default() -> Self {
         Self {
             zero_deg: Measured::new(0.0, 0.05),
+            displacement_over_radius: Measured::new(0.0, 4e-4),
             from_deg: None,
             foreign_lines: 4,
             foreign_share: 0.2,
@@ -130,11 +136,21 @@ impl fmt::Display for CubicError {
 impl std::error::Error for CubicError {}
 
 impl CubicOptions {
+    /// The prior of s/R with an s.u. above zero: at 10⁻⁹ no line moves.
+    fn displacement(&self) -> Measured {
+        let Measured { value, u } = self.displacement_over_radius;
+        Measured::new(value, u.max(1e-9))
+    }
+
     fn check(&self) -> Result<(), CubicError> {
         let positive = |x: f64| x.is_finite() && x > 0.0;
         let wrong = |name, expected| Err(CubicError::Option { name, expected });
         if !(positive(self.zero_deg.u) && self.zero_deg.value.is_finite()) {
             return wrong("zero_deg", "a finite value with an s.u. above zero");
+        }
+        let Measured { value, u } = self.displacement_over_radius;
+        if !(value.abs() < 0.1 && (0.0..0.1).contains(&u)) {
+            return wrong("displacement_over_radius", "a value within ±0.1 with an s.u. of 0 or above, below 0.1");
         }
         if !(positive(self.smallest_a) && self.largest_a.is_finite() && self.largest_a > self.smallest_a) {
             return wrong("the range of the edge", "0 < smallest_a < largest_a");

@@ -1,16 +1,18 @@
 //! The readings as they are reported: final fit, figures of merit, ratio table, and the sentences.
 
 use super::evidence::Refined;
-use super::lines::Lines;
+use super::lines::{Lines, by_displacement_deg};
 use super::sequence::{Centring, Sequence, indices};
 use super::twins::{Twin, TwinKind, exact_twins};
 use super::weigh::{Weighed, Weighing};
 use super::{CubicAnswer, CubicOptions, LineOfReading, MissingLine, Reading, Status};
-use crate::fit::{FitOptions, IndexedLine, fit_cell};
+use crate::fit::{Displacement, FitOptions, IndexedLine, fit_cell};
 use crate::merit::{Indexed, merit};
 use lattice::{AxisSystem, Cell};
 use values::{Peak, TwoTheta, Wavelength};
 
+/// Unknowns of the final fit: a, zero, s/R.
+const UNKNOWNS: usize = 3;
 /// Calculated lines that a diamond-like motif must hide, and observed ones, before it is named.
 const MOTIF_LINES: usize = 3;
 
@@ -57,26 +59,33 @@ fn reading(
 ) -> Option<Reading> {
     let lattice = &weighed.lattice;
     let used: Vec<usize> = (0..lines.list.len()).filter(|i| lattice.lines[*i].weight > 0.5).collect();
+    // Three residuals and three unknowns tell no s.u.: the likeliest one of the evidence takes its place.
+    let too_few = !lines.stated && used.len() <= UNKNOWNS;
     let indexed: Vec<IndexedLine> = used
         .iter()
         .map(|&i| IndexedLine {
             hkl: indices(lattice.lines[i].line as u32, lattice.centring).first().copied().unwrap_or_default(),
             two_theta: TwoTheta::from_deg(lines.list[i].two_theta_deg),
-            u_deg: lines.list[i].u_deg.filter(|_| lines.stated),
+            u_deg: if too_few { Some(lattice.scale) } else { lines.list[i].u_deg.filter(|_| lines.stated) },
         })
         .collect();
     let start = Cell::cubic(lattice.a).ok()?;
-    let fit_options = FitOptions { zero_deg: Some(options.zero_deg), displacement: None };
+    let displacement = Displacement { prior_mm: options.displacement(), radius_mm: 1.0 };
+    let fit_options = FitOptions { zero_deg: Some(options.zero_deg), displacement: Some(displacement) };
     let fit = fit_cell(&indexed, AxisSystem::Cubic, &start, wavelength, &fit_options).ok()?;
     let a = fit.cell_parameters[0];
     let zero_deg = fit.parameter("zero_deg")?;
+    // With a radius of one, s is s/R.
+    let displacement_over_radius = fit.parameter("displacement_mm")?;
+    let shift_deg =
+        |true_position: TwoTheta| zero_deg.value + displacement_over_radius.value * by_displacement_deg(true_position);
     let position = |n: u32| -> Option<f64> {
         let two_theta = TwoTheta::from_d(a.value / f64::from(n).sqrt(), wavelength)?;
-        Some(two_theta.deg() + zero_deg.value)
+        Some(two_theta.deg() + shift_deg(two_theta))
     };
     let rows: Vec<LineOfReading> = (0..lines.list.len()).map(|i| row(lines, lattice, i, &position)).collect();
     let missing = missing_lines(lines, lattice.centring, sequence, a.value, &rows, &position);
-    let merit = figures(lines, sequence, a.value, zero_deg.value, &rows, wavelength);
+    let merit = figures(lines, sequence, a.value, &shift_deg, &rows, wavelength);
     let motif = (lattice.centring == Centring::F).then(|| diamond_motif(&rows, &missing)).flatten();
     let mut notes = Vec::new();
     if weighed.halved {
@@ -100,7 +109,11 @@ fn reading(
             kind: TwinKind::ObservedLines,
         });
     }
-    if fit.u_factor > 1.0 {
+    if too_few {
+        notes.push(
+            "Too few lines to find their s.u. from the residuals: the likeliest of usual values was taken.".to_owned(),
+        );
+    } else if fit.u_factor > 1.0 {
         notes.push(format!(
             "the stated s.u. of the lines were multiplied by {:.2}, after their residuals",
             fit.u_factor
@@ -112,10 +125,11 @@ fn reading(
         a,
         volume: fit.volume,
         zero_deg,
-        covariance: [[fit.covariance[0][0], fit.covariance[0][1]], [fit.covariance[1][0], fit.covariance[1][1]]],
+        displacement_over_radius,
+        covariance: std::array::from_fn(|i| std::array::from_fn(|j| fit.covariance[i][j])),
         nu: fit.nu,
-        u_factor: fit.u_factor,
-        estimated_u_deg: fit.estimated_u_deg,
+        u_factor: if too_few { 1.0 } else { fit.u_factor },
+        estimated_u_deg: if too_few { Some(lattice.scale * fit.u_factor) } else { fit.estimated_u_deg },
         chi2_reduced: if lines.stated { fit.chi2_reduced() } else { None },
         probability: weighed.probability,
         ln_evidence: lattice.ln_evidence,
@@ -173,11 +187,12 @@ fn figures(
     lines: &Lines,
     sequence: &Sequence,
     a: f64,
-    zero_deg: f64,
+    shift_deg: &impl Fn(TwoTheta) -> f64,
     rows: &[LineOfReading],
     wavelength: Wavelength,
 ) -> Option<crate::merit::Merit> {
-    let q_of = |deg: f64| TwoTheta::from_deg(deg - zero_deg).q_per_square_angstrom(wavelength);
+    let q_of =
+        |deg: f64| TwoTheta::from_deg(deg - shift_deg(TwoTheta::from_deg(deg))).q_per_square_angstrom(wavelength);
     let indexed: Vec<Indexed> = rows
         .iter()
         .filter_map(|row| {
@@ -326,6 +341,16 @@ fn notes(given: usize, lines: &Lines, options: &CubicOptions) -> Vec<String> {
     } else {
         "the lines carry no s.u. (or not all): taken alike for all, and found from the residuals".to_owned()
     });
+    let (zero, displacement) = (options.zero_deg, options.displacement_over_radius);
+    notes.push(format!(
+        "The s.u. of a includes the lines, the zero (before the fit {}° ± {}°) and the displacement of the specimen (s/R before \
+         the fit {} ± {}, that is ± {:.2} mm at R = 240 mm); an internal standard narrows both.",
+        zero.value,
+        zero.u,
+        displacement.value,
+        displacement.u,
+        240.0 * displacement.u
+    ));
     if given > lines.list.len() {
         notes.push(format!(
             "the first {} lines by angle were used, {} beyond were not",

@@ -4,9 +4,10 @@
 //! its prior and, on request, the displacement s with its prior. Minimised is `Σ (Δ2θ_i/u_i)² + Σ ((p − p₀)/u₀)²`: a prior
 //! counts as one more observation (reference: Birge 1932, Phys. Rev. 40, 207 for the scaling below).
 //!
-//! Where every line has an s.u., it is used with one common factor: the Birge ratio `√(χ²/(n + priors − p))`, upwards only, and
-//! stated in [`CellFit::u_factor`]. Where not, the s.u. is that of the residuals with n − p degrees of freedom, all lines alike,
-//! and [`CellFit::nu`] says how many, for Student's t.
+//! Where every line has an s.u., it is used with one common factor: the Birge ratio `√(χ²/ν)` of the lines, upwards only, and
+//! stated in [`CellFit::u_factor`]. Where not, the s.u. is that of the residuals, all lines alike, and [`CellFit::nu`] says with
+//! how many degrees of freedom at least, for Student's t. In both, `ν = n − p + Σ C_kk/u₀²`, the sum over the priors: each
+//! parameter counts by the share that the lines determine, so that a value far from its prior does not enlarge the s.u. of lines.
 //!
 //! Derivatives are exact: `∂2θ/∂Q = tan θ / Q`, `∂Q/∂G = −x xᵀ` with `x = G* h`.
 
@@ -81,7 +82,7 @@ pub struct CellFit {
     pub u_factor: f64,
     /// The s.u. of every line, degrees 2θ, where it was estimated from the residuals.
     pub estimated_u_deg: Option<f64>,
-    /// Degrees of freedom for Student's t, where the s.u. was estimated.
+    /// Degrees of freedom n − p for Student's t, where the s.u. was estimated.
     pub nu: Option<usize>,
     /// The lines in the order given.
     pub lines: Vec<FittedLine>,
@@ -184,14 +185,16 @@ pub fn fit_cell(
     let mut scale = if stated { 1.0 } else { 0.01 };
     let mut solution = problem.solve(&own_u(scale))?;
     let chi2 = solution.weighted_residuals2 + solution.weighted_priors2;
-    if degrees_of_freedom > 0 && !(stated && chi2 <= degrees_of_freedom as f64) {
+    if degrees_of_freedom > 0 {
         for _ in 0..12 {
             let residuals2 = solution.weighted_residuals2 * scale * scale;
+            // n − p and the share of each parameter that its prior determines, C_kk/u₀²: the residuals left by the lines alone.
+            let left = n as f64 - p as f64 + problem.determined_by_priors(&solution);
             let next = if stated {
-                (residuals2 / (degrees_of_freedom as f64 - solution.weighted_priors2).max(0.5)).sqrt().max(1.0)
+                (residuals2 / left.max(0.5)).sqrt().max(1.0)
             } else {
                 // Below 1e-6° only rounding is left.
-                (residuals2 / degrees_of_freedom as f64).sqrt().max(1e-6)
+                (residuals2 / left.max(1.0)).sqrt().max(1e-6)
             };
             let done = (next / scale - 1.0).abs() < 1e-6;
             scale = next;

@@ -100,6 +100,11 @@ impl<'a> Problem<'a> {
         Err(FitError::Diverged)
     }
 
+    /// Number of parameters that the priors determine: `Σ C_kk/u₀²`.
+    pub(super) fn determined_by_priors(&self, solution: &Solution) -> f64 {
+        self.priors.iter().map(|(k, prior)| solution.covariance[*k][*k] / (prior.u * prior.u)).sum()
+    }
+
     /// The map at other values: only a shape without a name has another one there.
     fn map_at(&self, values: &[f64]) -> Result<Vec<[f64; 6]>, FitError> {
         match self.axes {

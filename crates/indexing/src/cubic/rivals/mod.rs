@@ -46,7 +46,7 @@ struct Trial {
 
 /// The best uniaxial lattices near the zero and scale of a cubic reading.
 pub(crate) fn rivals(lines: &Lines, cubic: &Refined, scales: &[(f64, f64)], options: &CubicOptions) -> Vec<Rival> {
-    let (zero_deg, scale) = (cubic.zero_deg, cubic.scale);
+    let (shift, scale) = (cubic.shift, cubic.scale);
     // No lattice calculates fewer lines than it explains: what a rival can gain is bounded, and it pays for one parameter more.
     let used = cubic.used() as f64;
     let gain = used * (cubic.calculated as f64 / used).ln() + 8.0 * (lines.list.len() as f64 - used);
@@ -55,7 +55,7 @@ pub(crate) fn rivals(lines: &Lines, cubic: &Refined, scales: &[(f64, f64)], opti
     }
     // A rival wins by calculating fewer lines. About (2/3) 0.35 Q^(3/2)/(A √C) lines lie below Q, a third of them if centred.
     let least_volume = 0.23 * lines.q_last.powf(1.5) / (4.0 * cubic.calculated as f64 + 20.0);
-    let q: Vec<f64> = lines.list.iter().map(|line| line.q - line.slope * zero_deg).collect();
+    let q: Vec<f64> = lines.list.iter().map(|line| line.q - line.slope * shift.at_deg(line)).collect();
     let windows: Vec<f64> =
         lines.list.iter().map(|line| (3.5 * lines.sigma_deg(line, scale) + 0.01) * line.slope).collect();
     let planes = [Plane::new(false), Plane::new(true)];
@@ -98,7 +98,7 @@ pub(crate) fn rivals(lines: &Lines, cubic: &Refined, scales: &[(f64, f64)], opti
         }
     }
     kept.iter()
-        .filter_map(|trial| refine(lines, plane_of(&planes, trial.kind), trial, zero_deg, scales, options))
+        .filter_map(|trial| refine(lines, plane_of(&planes, trial.kind), trial, shift, scales, options))
         .collect()
 }
 
