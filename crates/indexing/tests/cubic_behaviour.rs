@@ -77,7 +77,7 @@ fn a_line_at_the_place_of_a_ka2_satellite_is_named_and_left_out() {
     let answer = search(&peaks, copper(), &with_satellites()).unwrap();
     let first = &answer.readings[0];
     assert_eq!(first.centring, Centring::F);
-    assert_eq!(first.lines[4].status, Status::Satellite { name: "Cu Ka2".to_owned(), of: 3 });
+    assert_eq!(first.lines[4].status, Status::Satellite { name: "Cu Ka2".to_owned(), of: 3, sure: true });
     assert_eq!(first.unindexed().count(), 0);
     // Without the anode it is a foreign line.
     let plain = search(&peaks, copper(), &CubicOptions::default()).unwrap();
@@ -93,6 +93,7 @@ fn a_line_of_the_lattice_at_the_place_of_a_satellite_is_kept() {
         name: "invented".to_owned(),
         wavelength_ratio: (11.0_f64 / 12.0).sqrt(),
         largest_share: f64::INFINITY,
+        needs_intensity: false,
     };
     let options = CubicOptions { satellites: vec![ghost], ..CubicOptions::default() };
     let answer = search(&peaks, copper(), &options).unwrap();

@@ -168,7 +168,7 @@ fn lists_of_other_systems_are_not_called_cubic() {
     for pattern in patterns().iter().filter(|p| p.cell.c.is_some()) {
         let answer = find(pattern, &CubicOptions::default());
         assert!(!answer.found && answer.probability_none > 0.9, "{}: {}", pattern.name, answer.verdict);
-        assert!(answer.verdict.starts_with("not cubic"), "{}", answer.verdict);
+        assert!(answer.verdict.starts_with("Not cubic"), "{}", answer.verdict);
         seen += 1;
     }
     assert_eq!(seen, 5);

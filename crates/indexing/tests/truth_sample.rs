@@ -54,7 +54,7 @@ fn cubic_lists_are_named_and_others_are_not() {
                 cubic += 1;
             } else {
                 assert!(!answer.found, "{} ({}): {}", case.name, case.crystal_system, answer.verdict);
-                assert!(answer.verdict.starts_with("not cubic") && answer.probability_none > 0.5);
+                assert!(answer.verdict.starts_with("Not cubic") && answer.probability_none > 0.5);
                 others += 1;
             }
         }

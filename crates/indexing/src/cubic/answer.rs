@@ -111,6 +111,8 @@ pub enum Status {
         name: String,
         /// Index of the stronger line in the list that was given.
         of: usize,
+        /// Whether intensities bear it out; without them a line at the place of a satellite may as well be one of its own.
+        sure: bool,
     },
 }
 
@@ -134,19 +136,22 @@ pub struct Satellite {
     pub wavelength_ratio: f64,
     /// Largest intensity over that of the stronger line.
     pub largest_share: f64,
+    /// Whether the line is only suspected where intensities are known: the weak lines of a tube need not show at all.
+    pub needs_intensity: bool,
 }
 
 impl Satellite {
     /// Kα2, Kβ and the tungsten L lines of a tube, for a list that refers to Kα1.
     ///
     /// Largest shares: 0.7 for Kα2 (0.5 by nature, more where the fit was poor), 0.3 for the others (Kβ is 0.2 unfiltered;
-    /// tungsten less): common practice, no source.
+    /// tungsten less): common practice, no source. Only Kα2, which is always there, is looked for without intensities.
     #[must_use]
     pub fn of_anode(anode: Anode) -> Vec<Self> {
         // Any angle serves: the ratio of wavelengths does not depend on it.
         instrument::ghosts(values::TwoTheta::from_deg(20.0), anode)
             .into_iter()
             .map(|ghost| Self {
+                needs_intensity: !ghost.line.ends_with("Ka2"),
                 largest_share: if ghost.line.ends_with("Ka2") { 0.7 } else { 0.3 },
                 wavelength_ratio: ghost.wavelength.angstrom() / anode.ka1().wavelength.angstrom(),
                 name: ghost.line,

@@ -5,9 +5,9 @@ use values::{Peak, TwoTheta, Wavelength};
 
 /// Weight of the satellite against a random line in the density of foreign lines at a suspected satellite.
 const GHOST_SHARE: f64 = 0.5;
-/// A satellite may be off its place by this much besides the s.u. of both lines, degrees (no source: merging with the foot of
-/// its parent shifts it).
-const GHOST_SLACK_DEG: f64 = 0.02;
+/// A satellite may be off its place by three s.u. of the two lines, and by this much at least, degrees (no source: merging with
+/// the foot of its parent shifts it).
+const GHOST_SLACK_DEG: f64 = 0.01;
 
 /// One observed line.
 pub(crate) struct Line {
@@ -36,6 +36,8 @@ pub(crate) struct Ghost {
     /// Position in the sorted list of the line that casts it.
     pub(crate) of: usize,
     pub(crate) position_deg: f64,
+    /// Whether the intensities of both lines are known and bear it out.
+    pub(crate) sure: bool,
 }
 
 /// All lines of a list by rising angle.
@@ -93,9 +95,14 @@ impl Lines {
                 }
             })
             .collect();
-        let ghosts: Vec<Option<Ghost>> = (0..list.len()).map(|i| suspect(&list, i, options)).collect();
-        for (line, ghost) in list.iter_mut().zip(ghosts) {
-            line.ghost = ghost;
+        // By rising distance from the line that casts it, so that the closest of a chain comes first; a satellite casts none.
+        let mut ghosts: Vec<(usize, f64, Ghost)> = (0..list.len()).flat_map(|i| suspects(&list, i, options)).collect();
+        ghosts.sort_by(|x, y| x.1.total_cmp(&y.1));
+        for (i, _, ghost) in ghosts {
+            let casts = list.iter().any(|line| line.ghost.as_ref().is_some_and(|known| known.of == i));
+            if list[i].ghost.is_none() && list[ghost.of].ghost.is_none() && !casts {
+                list[i].ghost = Some(ghost);
+            }
         }
         let stated = list.iter().all(|line| line.u_deg.is_some());
         let share = (options.foreign_share * list.len() as f64).floor() as usize;
@@ -139,17 +146,21 @@ pub(crate) fn by_displacement_deg(two_theta: TwoTheta) -> f64 {
     -2.0 * two_theta.theta_rad().cos().to_degrees()
 }
 
-/// The satellite that line `i` may be: `sin θ = (λ₂/λ₁) sin θ₁` of a stronger line, and weaker than the radiation allows.
-fn suspect(list: &[Line], i: usize, options: &CubicOptions) -> Option<Ghost> {
+/// The satellites that line `i` may be, each with its distance from the place: `sin θ = (λ₂/λ₁) sin θ₁` of a stronger line.
+///
+/// Where intensities are known, the line must be weaker than the radiation allows. Where not, only a radiation that always shows
+/// beside its line is looked for ([`Satellite::needs_intensity`](super::Satellite)), and the claim is not sure.
+fn suspects(list: &[Line], i: usize, options: &CubicOptions) -> Vec<(usize, f64, Ghost)> {
     let line = &list[i];
-    let mut best: Option<(f64, Ghost)> = None;
+    let mut found = Vec::new();
     for satellite in &options.satellites {
         for (of, parent) in list.iter().enumerate().filter(|(of, _)| *of != i) {
-            if let (Some(weak), Some(strong)) = (line.strength, parent.strength)
-                && weak > satellite.largest_share * strong
-            {
-                continue;
-            }
+            let sure = match (line.strength, parent.strength) {
+                (Some(weak), Some(strong)) if weak > satellite.largest_share * strong => continue,
+                (Some(_), Some(_)) => true,
+                _ if satellite.needs_intensity => continue,
+                _ => false,
+            };
             let sine = (parent.two_theta_deg.to_radians() / 2.0).sin() * satellite.wavelength_ratio;
             if sine >= 1.0 {
                 continue;
@@ -157,10 +168,10 @@ fn suspect(list: &[Line], i: usize, options: &CubicOptions) -> Option<Ghost> {
             let position_deg = 2.0 * sine.asin().to_degrees();
             let both = line.u_deg.unwrap_or(0.01).hypot(parent.u_deg.unwrap_or(0.01));
             let off = (line.two_theta_deg - position_deg).abs();
-            if off < 3.0 * both + GHOST_SLACK_DEG && best.as_ref().is_none_or(|(least, _)| off < *least) {
-                best = Some((off, Ghost { name: satellite.name.clone(), of, position_deg }));
+            if off <= (3.0 * both).max(GHOST_SLACK_DEG) {
+                found.push((i, off, Ghost { name: satellite.name.clone(), of, position_deg, sure }));
             }
         }
     }
-    best.map(|(_, ghost)| ghost)
+    found
 }

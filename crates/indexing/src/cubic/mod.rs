@@ -74,6 +74,9 @@ impl Default for CubicOptions {
     }
 }
 
+/// Relative s.u. of a density that comes without one.
+pub(crate) const ASSUMED_DENSITY_U: f64 = 0.01;
+
 /// A formula, and the density of the powder's grains where it is known.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Content {
@@ -81,8 +84,17 @@ pub struct Content {
     pub molar_mass_g_mol: f64,
     /// Atoms other than hydrogen in the formula.
     pub heavy_atoms: f64,
-    /// Density, g/cm³.
+    /// Density, g/cm³; an s.u. of zero means that none is known, and 1 % is taken.
     pub density_g_cm3: Option<Measured>,
+}
+
+impl Content {
+    /// The density with its s.u.; 1 % where none is stated (no source).
+    #[must_use]
+    pub fn density_with_u(&self) -> Option<Measured> {
+        let stated = self.density_g_cm3?;
+        Some(if stated.u > 0.0 { stated } else { Measured::new(stated.value, ASSUMED_DENSITY_U * stated.value) })
+    }
 }
 
 /// Why a list cannot be searched.
@@ -120,7 +132,8 @@ impl fmt::Display for CubicError {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         match self {
             Self::TooFew { found } => {
-                write!(f, "{found} lines are too few to find a lattice; three or more are needed, twenty are good")
+                let lines = if *found == 1 { "line is" } else { "lines are" };
+                write!(f, "{found} {lines} too few to find a lattice; three or more are needed, twenty are good")
             }
             Self::Position { index, two_theta_deg } => {
                 write!(f, "line {} lies at {two_theta_deg}°; expected 2θ between 0 and 180°", index + 1)

@@ -4,12 +4,12 @@ use super::evidence::Refined;
 use super::lines::{Lines, by_displacement_deg};
 use super::sequence::{Centring, Sequence, indices};
 use super::twins::{Twin, TwinKind, exact_twins};
-use super::weigh::{Weighed, Weighing};
-use super::{CubicAnswer, CubicOptions, LineOfReading, MissingLine, Reading, Status};
+use super::weigh::{Weighed, Weighing, nearest_units};
+use super::{ASSUMED_DENSITY_U, CubicAnswer, CubicOptions, LineOfReading, MissingLine, Reading, Status};
 use crate::fit::{Displacement, FitOptions, IndexedLine, fit_cell};
 use crate::merit::{Indexed, merit};
 use lattice::{AxisSystem, Cell};
-use values::{Peak, TwoTheta, Wavelength};
+use values::{Measured, Peak, TwoTheta, Wavelength};
 
 /// Unknowns of the final fit: a, zero, s/R.
 const UNKNOWNS: usize = 3;
@@ -19,6 +19,9 @@ const MOTIF_LINES: usize = 3;
 /// Readings with the same lines are named as partners above this share of a reading's probability: larger cells that merely
 /// contain the lattice are not.
 const PARTNER_SHARE: f64 = 0.01;
+/// Partners whose primitive volume is more than this many times larger or smaller are not named: a doubled edge that explains the
+/// same lines misleads nobody. A little above two, for rounding.
+const LARGEST_PARTNER: f64 = 2.001;
 
 pub(crate) fn answer(
     peaks: &[Peak],
@@ -90,7 +93,7 @@ fn reading(
     let mut notes = Vec::new();
     if weighed.halved {
         notes.push(
-            "all lines with odd indices are absent: the two kinds of atoms would have to scatter alike, as K and Cl in KCl"
+            "All lines with odd indices are absent: the two kinds of atoms would have to scatter alike, as K and Cl in KCl."
                 .to_owned(),
         );
     }
@@ -98,8 +101,8 @@ fn reading(
     if motif.is_some() {
         let wider = a.value * std::f64::consts::SQRT_2;
         notes.push(format!(
-            "a body-centred cell with a = {wider:.4} Å and the glide planes of garnet (I a -3 d) can show the same lines; the \
-             volume per atom decides"
+            "A body-centred cell with a = {wider:.4} Å and the glide planes of garnet (I a -3 d) can show the same lines; the \
+             volume per atom decides."
         ));
         same_lines_as.push(Twin {
             crystal_system: "cubic",
@@ -115,10 +118,11 @@ fn reading(
         );
     } else if fit.u_factor > 1.0 {
         notes.push(format!(
-            "the stated s.u. of the lines were multiplied by {:.2}, after their residuals",
+            "The stated s.u. of the lines were multiplied by {:.2}, after their residuals.",
             fit.u_factor
         ));
     }
+    notes.extend(weighed.formula_units.and_then(|z| no_whole_number(z, lattice.centring)));
     Some(Reading {
         rank: 0,
         centring: lattice.centring,
@@ -144,6 +148,19 @@ fn reading(
     })
 }
 
+/// A remark where Z is no multiple of the points of the lattice within three s.u.
+fn no_whole_number(z: Measured, centring: Centring) -> Option<String> {
+    let off = (z.value - nearest_units(z.value, centring)).abs();
+    let multiple = match centring {
+        Centring::P => "",
+        Centring::I => " (here an even one)",
+        Centring::F => " (here a multiple of 4)",
+    };
+    (off > 3.0 * z.u).then(|| {
+        format!("Z = {z} is not a whole number{multiple} within its uncertainty: density, formula or cell is wrong.")
+    })
+}
+
 fn row(lines: &Lines, lattice: &Refined, i: usize, position: &impl Fn(u32) -> Option<f64>) -> LineOfReading {
     let (line, hit) = (&lines.list[i], &lattice.lines[i]);
     let used = hit.weight > 0.5;
@@ -151,7 +168,7 @@ fn row(lines: &Lines, lattice: &Refined, i: usize, position: &impl Fn(u32) -> Op
     let calculated_deg = n.and_then(position);
     let status = match &line.ghost {
         _ if used => Status::Used,
-        Some(ghost) => Status::Satellite { name: ghost.name.clone(), of: lines.list[ghost.of].index },
+        Some(ghost) => Status::Satellite { name: ghost.name.clone(), of: lines.list[ghost.of].index, sure: ghost.sure },
         None => Status::Unindexed,
     };
     LineOfReading {
@@ -238,12 +255,16 @@ fn name_partners(readings: &mut [Reading], weighed: &Weighing) {
         .collect();
     for i in 0..readings.len() {
         for (j, twin) in names.iter().enumerate().filter(|(j, _)| *j != i) {
+            let volume_ratio = twin.volume_ratio / names[i].volume_ratio;
+            let near = (1.0 / LARGEST_PARTNER..=LARGEST_PARTNER).contains(&volume_ratio);
             let likely = weighed.readings[j].probability > PARTNER_SHARE * weighed.readings[i].probability;
-            if likely && same_lines(&readings[i], &readings[j]) {
-                let volume_ratio = twin.volume_ratio / names[i].volume_ratio;
+            if near && likely && same_lines(&readings[i], &readings[j]) {
                 readings[i].same_lines_as.push(Twin { volume_ratio, ..twin.clone() });
             }
         }
+        // The exact ones first, then by volume.
+        let place = |twin: &Twin| if twin.kind == TwinKind::Exact { 0.0 } else { twin.volume_ratio };
+        readings[i].same_lines_as.sort_by(|x, y| place(x).total_cmp(&place(y)));
     }
 }
 
@@ -269,7 +290,7 @@ fn why_ambiguous(readings: &[Reading], weighed: &Weighing) -> Option<String> {
     let primitive_and_body = small.centring == Centring::P && large.centring == Centring::I;
     Some(if halved && same_lines(first, second) {
         format!(
-            "ambiguous: {names} explain the same lines. Every line of the primitive cell is there; the face-centred cell of \
+            "Ambiguous: {names} explain the same lines. Every line of the primitive cell is there; the face-centred cell of \
              twice the edge has no more if its two kinds of atoms scatter alike, so that all lines with odd indices vanish, as \
              in KCl. The probability is shared equally; the density (formula units per cell) or one weak odd line decides."
         )
@@ -282,64 +303,90 @@ fn why_ambiguous(readings: &[Reading], weighed: &Weighing) -> Option<String> {
              in the list"
         };
         format!(
-            "ambiguous: {names} explain the same lines. {deciding}; the density decides as well. The probability is shared by \
+            "Ambiguous: {names} explain the same lines. {deciding}; the density decides as well. The probability is shared by \
              the number of lines that each calculates."
         )
     } else {
         format!(
-            "ambiguous: {names} both explain the lines; the evidence differs by {:.1} nats only.",
+            "Ambiguous: {names} both explain the lines; the evidence differs by {:.1} nats only.",
             (first.ln_evidence - second.ln_evidence).abs()
         )
     })
 }
 
+/// How many lines have indices, are satellites, or neither.
+fn account(reading: &Reading) -> String {
+    let count = |wanted: &dyn Fn(&Status) -> bool| reading.lines.iter().filter(|line| wanted(&line.status)).count();
+    let used = count(&|status| *status == Status::Used);
+    let all = reading.lines.len();
+    let mut text = format!(
+        "{used} of {} {}",
+        counted(all, "line", "lines"),
+        if used == 1 { "has indices" } else { "have indices" }
+    );
+    let sure = count(&|status| matches!(status, Status::Satellite { sure: true, .. }));
+    let unsure = count(&|status| matches!(status, Status::Satellite { sure: false, .. }));
+    if sure > 0 {
+        text += &format!(", {sure} {}", if sure == 1 { "is a satellite" } else { "are satellites" });
+    }
+    if unsure > 0 {
+        text += &format!(", {unsure} may be {}", if unsure == 1 { "a satellite" } else { "satellites" });
+    }
+    let foreign = count(&|status| *status == Status::Unindexed);
+    if foreign > 0 {
+        text += &format!(", {foreign} without indices");
+    }
+    text
+}
+
+/// A number with its noun.
+fn counted(n: usize, one: &str, many: &str) -> String {
+    format!("{n} {}", if n == 1 { one } else { many })
+}
+
 fn verdict(readings: &[Reading], weighed: &Weighing, found: bool, ambiguous: bool) -> String {
     let Some(first) = readings.first() else {
-        return "not cubic: no cubic lattice explains the lines with as few foreign ones as are allowed".to_owned();
+        return "Not cubic: no cubic lattice explains the lines with as few foreign ones as are allowed.".to_owned();
     };
     if !found {
         return match weighed.rival {
             Some(rival) => format!(
-                "not cubic: a {} lattice (a = {:.4} Å, c = {:.4} Å) explains the lines with fewer calculated ones than {}",
+                "Not cubic: a {} lattice (a = {:.4} Å, c = {:.4} Å) explains the lines with fewer calculated ones than {}.",
                 rival.kind.name(),
                 rival.a,
                 rival.c,
                 lattice_name(first)
             ),
             None => format!(
-                "not cubic, or too few lines to say: {} explains {} of {} lines, no more than other lattices would",
+                "Not cubic, or too few lines to say: with {}, {}; other lattices would do as well.",
                 lattice_name(first),
-                first.lines.iter().filter(|l| l.status == Status::Used).count(),
-                first.lines.len()
+                account(first)
             ),
         };
     }
-    let foreign = first.unindexed().count();
     let next = match readings.get(1) {
         Some(second) if !ambiguous && second.probability > 0.05 => {
             format!("; next {} with probability {:.2}", lattice_name(second), second.probability)
         }
         _ => String::new(),
     };
-    let rest = if foreign == 0 { String::new() } else { format!(", {foreign} without indices") };
     format!(
-        "cubic {}{}; {} of {} lines have indices{rest}{next}",
+        "Cubic {}{}; {}{next}.",
         lattice_name(first),
         if ambiguous { " or another reading (see the reason)" } else { "" },
-        first.lines.iter().filter(|l| l.status == Status::Used).count(),
-        first.lines.len()
+        account(first)
     )
 }
 
 fn notes(given: usize, lines: &Lines, options: &CubicOptions) -> Vec<String> {
     let mut notes = vec![
-        "probabilities are provisional: a likelihood against random lines, with constants chosen on synthetic lists"
+        "Probabilities are provisional: a likelihood against random lines, with constants chosen on synthetic lists."
             .to_owned(),
     ];
     notes.push(if lines.stated {
-        "s.u. of the lines as stated, with one common factor of 1 or more".to_owned()
+        "The s.u. of the lines were taken as stated.".to_owned()
     } else {
-        "the lines carry no s.u. (or not all): taken alike for all, and found from the residuals".to_owned()
+        "The lines carry no s.u. (or not all): taken alike for all, and found from the residuals.".to_owned()
     });
     let (zero, displacement) = (options.zero_deg, options.displacement_over_radius);
     notes.push(format!(
@@ -352,16 +399,19 @@ fn notes(given: usize, lines: &Lines, options: &CubicOptions) -> Vec<String> {
         240.0 * displacement.u
     ));
     if given > lines.list.len() {
+        let beyond = given - lines.list.len();
         notes.push(format!(
-            "the first {} lines by angle were used, {} beyond were not",
-            options.most_lines,
-            given - lines.list.len()
+            "The first {} by angle were used, {beyond} beyond {} not.",
+            counted(options.most_lines, "line", "lines"),
+            if beyond == 1 { "was" } else { "were" }
         ));
     }
-    if options.content.is_none() {
-        notes.push(
-            "equally good readings are ordered by the smaller cell; with a formula, by the volume per atom".to_owned(),
-        );
+    notes.push(format!(
+        "Readings are ordered by probability; those that agree within 1 % {}by the smaller cell.",
+        if options.content.is_some() { "by the volume per atom nearest to 18 Å³, then " } else { "" }
+    ));
+    if options.content.and_then(|content| content.density_g_cm3).is_some_and(|density| density.u <= 0.0) {
+        notes.push(format!("The density came without an s.u.; {:.0} % was taken.", 100.0 * ASSUMED_DENSITY_U));
     }
     notes
 }

@@ -29,6 +29,8 @@ const ONE_ATOM_VOLUME: std::ops::RangeInclusive<f64> = 10.0..=45.0;
 const COMPLETE_LINES: usize = 6;
 /// Relative s.u. that is added to a density: pores, and the formula itself (no source).
 const DENSITY_FLOOR: f64 = 0.01;
+/// Misfit of Z in s.u. beyond which a reading loses no more weight (no source).
+const LARGEST_MISFIT: f64 = 3.0;
 
 /// One reading with its weight.
 pub(crate) struct Weighed {
@@ -128,18 +130,26 @@ fn volume_misfit(lattice: &Refined, heavy_atoms: f64) -> f64 {
 }
 
 /// ln of the weight of the composition, and Z: the formula units of a lattice are a multiple of its points per cell.
+///
+/// A density that fits no reading says that density or formula are wrong, not which reading is right: a misfit counts as three
+/// s.u. at most ([`LARGEST_MISFIT`]).
 fn composition(lattice: &Refined, options: &CubicOptions) -> (f64, Option<Measured>) {
-    let Some((content, density)) = options.content.and_then(|c| c.density_g_cm3.map(|d| (c, d))) else {
+    let Some((content, density)) = options.content.and_then(|c| c.density_with_u().map(|d| (c, d))) else {
         return (0.0, None);
     };
     let units = crate::materials::from_density(Measured::exact(lattice.a.powi(3)), content.molar_mass_g_mol, density);
     let step = f64::from(lattice.centring.multiplicity());
-    let allowed = (units.value / step).round().max(1.0) * step;
     let u = units.u.hypot(DENSITY_FLOOR * units.value);
-    let z = (units.value - allowed) / u;
+    let z = ((units.value - nearest_units(units.value, lattice.centring)) / u).abs().min(LARGEST_MISFIT);
     // Against a Z spread evenly over one step.
     let ln_weight = -0.5 * z * z + (step / (u * (2.0 * std::f64::consts::PI).sqrt())).ln().max(0.0);
     (ln_weight, Some(units))
+}
+
+/// The number of formula units nearest to `z` that the points of the lattice allow.
+pub(crate) fn nearest_units(z: f64, centring: Centring) -> f64 {
+    let step = f64::from(centring.multiplicity());
+    (z / step).round().max(1.0) * step
 }
 
 /// The face-centred reading of twice the edge with the same evidence, where the module's conditions hold.
