@@ -3,8 +3,8 @@
 use drift::report::{BatchReport, Delta};
 use drift::{Decision, Report};
 use figures::{
-    CalculatedLine, CellParameter, DriftDecision, DriftFigure, DriftPoint, DriftUnit, IndexedFigure, LineKind, Merit,
-    ObservedLine, Page, PageLink, PagePicture, PageSection, PatternFigure, PhaseCurve, ReflectionMark,
+    CalculatedLine, CellParameter, DriftDecision, DriftFigure, DriftPoint, DriftUnit, FigureError, IndexedFigure,
+    LineKind, Merit, ObservedLine, Page, PageLink, PagePicture, PageSection, PatternFigure, PhaseCurve, ReflectionMark,
 };
 use indexing::cubic::{CubicAnswer, Status};
 use instrument::Radiation;
@@ -16,9 +16,14 @@ use crate::commands::predict::PredictArgs;
 use crate::failure::Failure;
 use crate::table;
 
-/// A picture that can't be drawn is a fault of the program: its input was checked before.
-fn drawn(result: Result<String, figures::FigureError>) -> Result<String, Failure> {
-    result.map_err(|error| Failure::Program(format!("the picture can't be drawn: {error}")))
+/// Too many batches or a number beyond the axis come from the input; any other picture that can't be drawn is a fault of the
+/// program.
+fn drawn(result: Result<String, FigureError>) -> Result<String, Failure> {
+    result.map_err(|error| match error {
+        FigureError::TooMany { .. } => Failure::option(error.into()),
+        FigureError::NotDrawable { value, .. } if value.is_finite() => Failure::option(error.into()),
+        other => Failure::Program(format!("the picture can't be drawn: {other}")),
+    })
 }
 
 /// The predicted pattern.

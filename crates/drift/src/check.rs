@@ -36,6 +36,8 @@ pub fn check(
         ))
     })?;
     options.checked(model.names())?;
+    options.check_temperatures(reference, batches)?;
+    phase.checked()?;
     let common = Common { model: &model, predicted: &phase.reflections, wavelength, options };
     let (prepared, failures) = prepare_all(&common, reference, batches, phase)?;
     let fitted = fit_all(&common, reference, prepared, failures)?;

@@ -1,5 +1,6 @@
 //! What a check takes.
 
+use super::temperature::ROOM_C;
 use indexing::assign::{AssignOptions, Predicted};
 use lattice::{AxisSystem, Cell};
 use std::fmt;
@@ -94,6 +95,33 @@ impl fmt::Display for DriftError {
 
 impl std::error::Error for DriftError {}
 
+/// Reflections of a phase, at most (own choice): of more, hundreds share every line, and the assignment takes minutes.
+const MOST_REFLECTIONS: usize = 20_000;
+
+impl Phase {
+    /// Refuses structures whose lines cannot be told apart.
+    pub(crate) fn checked(&self) -> Result<(), DriftError> {
+        if self.reflections.len() <= MOST_REFLECTIONS {
+            return Ok(());
+        }
+        Err(DriftError::Input(Diagnostic::new(
+            format!("a structure with {} reflections in the range of the lines", self.reflections.len()),
+            format!("at most {MOST_REFLECTIONS}: lines cannot be told apart among more"),
+            "check cell and symmetry, or leave out lines at high angles",
+        )))
+    }
+}
+
+/// A length cannot change by more than itself and still be one.
+const LARGEST_LIMIT_PPM: f64 = 1e6;
+/// The bound of structures in TOML too: far above the expansion of any solid (common practice, no source).
+const LARGEST_EXPANSION_PER_K: f64 = 0.01;
+const ABSOLUTE_ZERO_C: f64 = -273.15;
+/// Above the melting point of any solid, °C (common practice, no source).
+const HOTTEST_C: f64 = 5000.0;
+/// Length at the list's temperature over that at the reference: beyond, one linear coefficient says nothing (own choice).
+const GROWTH: std::ops::RangeInclusive<f64> = 0.9..=1.1;
+
 impl Options {
     /// Checks numbers against their bounds, and the chosen parameter against the free ones.
     pub(crate) fn checked(&self, names: &[&'static str]) -> Result<(), DriftError> {
@@ -102,13 +130,12 @@ impl Options {
         if !(self.risk > 0.0 && self.risk < 0.5) {
             return wrong(format!("risk {}", self.risk), "a number above 0 and below 0.5", "state a risk such as 0.05");
         }
-        let limits_ok = [Some(self.limit_ppm), self.limit_deg].iter().flatten().all(|l| l.is_finite() && *l >= 0.0);
-        if !limits_ok {
-            return wrong(
-                format!("limit {} ppm", self.limit_ppm),
-                "a number of 0 or above",
-                "state the largest change that is in order, or leave the limit out",
-            );
+        let in_order = "state the largest change that is in order, or leave the limit out";
+        if !(0.0..=LARGEST_LIMIT_PPM).contains(&self.limit_ppm) {
+            return wrong(format!("limit {} ppm", self.limit_ppm), "a number from 0 to 1000000", in_order);
+        }
+        if let Some(deg) = self.limit_deg.filter(|deg| !(0.0..=180.0).contains(deg)) {
+            return wrong(format!("limit {deg}°"), "a number of degrees from 0 to 180", in_order);
         }
         if let Some(name) = self.parameter.as_deref().filter(|p| !names.contains(p)) {
             return wrong(
@@ -127,6 +154,43 @@ impl Options {
         }
         if self.radius_mm.is_some_and(|r| !(r.is_finite() && r > 0.0)) {
             return wrong("a radius that is not above 0".to_owned(), "millimetres above 0", "state the radius in mm");
+        }
+        if let Some(expansion) = &self.expansion {
+            if let Some(alpha) = expansion.per_k.iter().find(|a| !(u_ok(a) && a.value.abs() <= LARGEST_EXPANSION_PER_K))
+            {
+                return wrong(
+                    format!("an expansion of {} ± {} per kelvin", alpha.value, alpha.u),
+                    "a number from -0.01 to 0.01 with an s.u. of 0 or above",
+                    "give α per kelvin, such as 1.1e-5,4e-7",
+                );
+            }
+            if !(ABSOLUTE_ZERO_C..=HOTTEST_C).contains(&expansion.reference_c) {
+                return wrong(
+                    format!("a reference temperature of {} °C", expansion.reference_c),
+                    "degrees Celsius from -273.15 to 5000",
+                    "give the temperature that cells are brought to",
+                );
+            }
+        }
+        Ok(())
+    }
+
+    /// Checks that the temperatures leave each list a cell; one without is at that of a room where another has one.
+    pub(crate) fn check_temperatures(&self, reference: &LineList, batches: &[LineList]) -> Result<(), DriftError> {
+        let lists = || std::iter::once(reference).chain(batches);
+        let Some(expansion) = self.expansion.as_ref().filter(|_| lists().any(|l| l.temperature_c.is_some())) else {
+            return Ok(());
+        };
+        for list in lists() {
+            let celsius = list.temperature_c.unwrap_or(ROOM_C).value;
+            let grown = |alpha: &Measured| 1.0 + alpha.value * (celsius - expansion.reference_c);
+            if !expansion.per_k.iter().all(|alpha| GROWTH.contains(&grown(alpha))) {
+                return Err(DriftError::Input(Diagnostic::new(
+                    format!("{} at {celsius} °C, with cells brought to {} °C", list.id, expansion.reference_c),
+                    "temperatures between which the cell changes by less than a tenth",
+                    "correct the temperature in °C or the expansion per kelvin",
+                )));
+            }
         }
         Ok(())
     }

@@ -301,7 +301,10 @@ pub(crate) fn effective_dof(parts: Parts, outside: f64, mine: Noise, reference: 
     let mut doubt = 0.0;
     let mut pooled = 0.0;
     let mut pooled_dof = f64::INFINITY;
-    for (variance, noise) in [(parts.own, mine), (parts.reference, reference)] {
+    // What is stated has no doubt, and is not pooled with the estimate of lists that state nothing.
+    for (variance, noise) in
+        [(parts.own, mine), (parts.reference, reference)].into_iter().filter(|(_, n)| n.dof.is_finite())
+    {
         if noise.pooled {
             pooled += variance;
             pooled_dof = pooled_dof.min(noise.dof);
@@ -313,4 +316,25 @@ pub(crate) fn effective_dof(parts: Parts, outside: f64, mine: Noise, reference: 
         doubt += pooled * pooled / pooled_dof;
     }
     if doubt > 0.0 { total * total / doubt } else { f64::INFINITY }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::{AS_STATED, Noise, Parts, effective_dof};
+
+    #[test]
+    fn degrees_of_freedom_count_only_the_variances_that_were_estimated() {
+        let parts = Parts { own: 4.0, reference: 1.0, shared: 0.5 };
+        let pooled = Noise { factor: 1.0, dof: 10.0, pooled: true };
+        let own = Noise { factor: 2.0, dof: 10.0, pooled: false };
+        // By hand, Welch–Satterthwaite: ν = u⁴ / Σ (u_i⁴/ν_i), with 0.5 from outside of the lines; u² = 6.
+        let close = |x: f64, y: f64| (x / y - 1.0).abs() < 1e-12;
+        assert!(effective_dof(parts, 0.5, AS_STATED, AS_STATED).is_infinite());
+        assert!(close(effective_dof(parts, 0.5, own, AS_STATED), 36.0 / 1.6));
+        assert!(close(effective_dof(parts, 0.5, own, own), 36.0 / 1.7));
+        // One pooled estimate: the parts are added before they are squared.
+        assert!(close(effective_dof(parts, 0.5, pooled, pooled), 36.0 / 2.5));
+        // A batch without s.u. against a reference with its own stated ones.
+        assert!(close(effective_dof(parts, 0.5, pooled, AS_STATED), 36.0 / 1.6));
+    }
 }

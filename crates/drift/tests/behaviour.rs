@@ -338,3 +338,51 @@ fn wrong_options_are_refused_with_what_was_expected() {
         Err(DriftError::NoAnswer(message)) if message.found.contains("empty")
     ));
 }
+
+#[test]
+fn an_expansion_a_temperature_or_a_limit_that_makes_no_sense_is_refused() {
+    let mut draws = Draws(17);
+    let mut lists = [list("r", STILL, &mut draws), list("b", STILL, &mut draws)];
+    lists.iter_mut().for_each(|l| l.temperature_c = Some(Measured::new(22.5, 0.3)));
+    let refused = |lists: &[LineList], options: &Options| {
+        matches!(check(&lists[0], &lists[1..], &phase(), copper(), options), Err(DriftError::Input(_)))
+    };
+    let expansion = |alpha: f64, u: f64, reference_c: f64| Options {
+        expansion: Some(Expansion { per_k: [Measured::new(alpha, u); 3], reference_c }),
+        ..options()
+    };
+    assert!(!refused(&lists, &expansion(1.1e-5, 1e-6, 22.5)));
+    for (alpha, u, reference_c) in
+        [(1.0, 0.0, 22.5), (f64::NAN, 0.0, 22.5), (1e-5, -1.0, 22.5), (1e-5, 0.0, f64::NAN), (1e-3, 0.0, 2000.0)]
+    {
+        assert!(refused(&lists, &expansion(alpha, u, reference_c)), "{alpha} {u} {reference_c}");
+    }
+    lists[1].temperature_c = Some(Measured::new(1e6, 0.3));
+    assert!(refused(&lists, &expansion(1.1e-5, 0.0, 22.5)));
+    assert!(refused(&lists, &Options { limit_ppm: 2e6, ..options() }));
+    assert!(refused(&lists, &Options { limit_deg: Some(f64::INFINITY), ..options() }));
+}
+
+#[test]
+fn a_structure_with_more_reflections_than_lines_can_be_told_apart_among_is_refused_at_once() {
+    let mut draws = Draws(18);
+    let lists = ["r", "b"].map(|id| list(id, STILL, &mut draws));
+    let dense = Phase { reflections: vec![phase().reflections[0]; 20_001], ..phase() };
+    let error = check(&lists[0], &lists[1..], &dense, copper(), &options()).unwrap_err();
+    assert!(matches!(&error, DriftError::Input(d) if d.found.contains("20001 reflections")), "{error}");
+}
+
+#[test]
+fn short_lists_with_understated_uncertainties_share_one_birge_ratio() {
+    let mut draws = Draws(19);
+    let mut lists = ["r", "b"].map(|id| list(id, Batch { noise: 20.0, ..STILL }, &mut draws));
+    lists.iter_mut().for_each(|l| l.peaks.truncate(5));
+    let report = run(&lists, &options());
+    let batch = report.batches[0].list.as_ref().unwrap();
+    // By hand: √(χ²/ν) of both lists, each with five lines, a cell and a displacement: ν = 2 (5 − 2).
+    let by_hand = ((report.reference.chi2 + batch.chi2) / 6.0).sqrt();
+    assert!(by_hand > 5.0, "{by_hand}");
+    for noise in [report.reference.noise, batch.noise] {
+        assert!((noise.factor / by_hand - 1.0).abs() < 1e-9 && noise.dof == Some(6.0), "{noise:?} {by_hand}");
+    }
+}

@@ -102,7 +102,7 @@ impl FigureError {
     fn parts(&self) -> Diagnostic {
         match self {
             Self::NotDrawable { what, index, value } => Diagnostic::new(
-                format!("{what} number {} is {value}", index + 1),
+                format!("{what} number {} is {value:e}", index + 1),
                 "a finite number of at most 1e15 in magnitude",
                 "leave the entry out or correct it",
             ),

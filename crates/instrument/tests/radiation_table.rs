@@ -69,3 +69,26 @@ fn every_anode_has_its_doublet_and_beta_lines_in_order() {
     assert!((Anode::Cu.ka1().wavelength.angstrom() - 1.540_592_92).abs() < 4.5e-7);
     assert!((Anode::Mo.ka1().wavelength.angstrom() - 0.709_317_15).abs() < 4.1e-7);
 }
+
+#[test]
+fn no_digit_of_a_k_alpha_wavelength_slipped() {
+    // Outside: energies of Kα1 and Kα2 in eV of Deslattes et al., Rev. Mod. Phys. 75 (2003) 35, typed from memory apart from the
+    // table of wavelengths. Their hc is older by 1e-7; the last digit of Mo Kα2 leaves 4e-7.
+    let energies = [
+        (Anode::Cr, 5414.8045, 5405.5384),
+        (Anode::Mn, 5898.8010, 5887.6859),
+        (Anode::Fe, 6404.0062, 6391.0264),
+        (Anode::Co, 6930.3780, 6915.5380),
+        (Anode::Ni, 7478.2521, 7461.0343),
+        (Anode::Cu, 8047.8227, 8027.8416),
+        (Anode::Mo, 17_479.372, 17_374.29),
+        (Anode::Ag, 22_162.917, 21_990.30),
+    ];
+    assert_eq!(energies.len(), Anode::ALL.len());
+    for (anode, ka1, ka2) in energies {
+        for (line, energy) in [(anode.ka1(), ka1), (anode.ka2(), ka2)] {
+            let relative = line.wavelength.energy_ev() / energy - 1.0;
+            assert!(relative.abs() < 5e-7, "{anode} {}: {relative:e}", line.name);
+        }
+    }
+}

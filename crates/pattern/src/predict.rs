@@ -120,6 +120,9 @@ fn predict_phase(
     let f_squared = model.f_squared(&hkl).map_err(|error| failed(error.to_string()))?;
     let volume_a3 = structure.cell.volume();
     let density_g_cm3 = structure.density_g_cm3().map_err(|error| failed(error.to_string()))?;
+    if density_g_cm3.is_nan() || density_g_cm3 <= 0.0 {
+        return Err(failed("the atoms of the cell weigh nothing; are all occupancies 0?".to_owned()));
+    }
     let scale = mass_fraction / (density_g_cm3 * volume_a3 * volume_a3);
     let reflections = listed
         .iter()

@@ -137,3 +137,34 @@ fn scattering_factors_beyond_their_range_are_refused_by_name() {
     let error = predict(&[(&silicon(), 1.0)], &short).unwrap_err();
     assert!(error.reason.contains("2 Å⁻¹"), "{error}");
 }
+
+#[test]
+fn a_structure_without_mass_is_refused() {
+    let mut empty = silicon();
+    empty.atoms.iter_mut().for_each(|atom| atom.occupancy = 0.0);
+    let error = predict(&[(&silicon(), 1.0), (&empty, 1.0)], &options()).unwrap_err();
+    assert!(error.reason.contains("weigh nothing"), "{error}");
+}
+
+#[test]
+fn equal_masses_of_silicon_and_corundum_show_the_reference_intensity_ratio() {
+    // Outside: 4.728, strongest line of silicon over 113 of corundum, computed from first principles by independent code with
+    // the f0 of International Tables C and Cromer–Liberman dispersion, Cu Kα1, no monochromator.
+    let corundum = Structure::from_toml(
+        r#"
+cell = [4.7592, 4.7592, 12.992, 90, 90, 120]
+space_group = "R -3 c:H"
+sites = [
+  { element = "Al", xyz = [0, 0, 0.35216], b_iso_A2 = 0.26 },
+  { element = "O", xyz = [0.30624, 0, 0.25], b_iso_A2 = 0.29 },
+]
+"#,
+        "corundum.toml",
+    )
+    .unwrap();
+    let mixed = predict(&[(&silicon(), 1.0), (&corundum, 1.0)], &options()).unwrap();
+    let strongest = mixed[0].reflections.iter().map(|r| r.intensity).fold(0.0, f64::max);
+    let standard = mixed[1].reflections.iter().find(|r| (r.two_theta.deg() - 43.353).abs() < 0.01).unwrap();
+    let ratio = strongest / standard.intensity;
+    assert!((ratio / 4.728 - 1.0).abs() < 5e-4, "{ratio}");
+}

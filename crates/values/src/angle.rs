@@ -104,4 +104,15 @@ mod tests {
             assert_eq!(Wavelength::from_angstrom(wrong), None);
         }
     }
+
+    #[test]
+    fn energy_and_q_are_those_of_scipy_and_of_bragg_s_law() {
+        // Outside: scipy.constants h c / e (exact constants of the SI): 12398.419843320025 eV Å.
+        let one = Wavelength::from_angstrom(1.0).unwrap();
+        assert!((one.energy_ev() / 12_398.419_843_320_025 - 1.0).abs() < 1e-14);
+        let copper = Wavelength::from_angstrom(1.5405929).unwrap();
+        let line = TwoTheta::from_d(2.5, copper).unwrap();
+        // By hand: Q = 1/d² = 1/6.25.
+        assert!((line.q_per_square_angstrom(copper) - 0.16).abs() < 1e-14);
+    }
 }

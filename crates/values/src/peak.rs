@@ -53,3 +53,17 @@ impl Peak {
         self.intensity.or(self.area)
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::Peak;
+    use crate::TwoTheta;
+
+    #[test]
+    fn strength_is_the_intensity_and_the_area_only_where_that_is_all_there_is() {
+        let bare = Peak::at(TwoTheta::from_deg(30.0));
+        assert_eq!(bare.strength(), None);
+        assert_eq!(Peak { area: Some(2.0), ..bare }.strength(), Some(2.0));
+        assert_eq!(Peak { area: Some(2.0), intensity: Some(100.0), ..bare }.strength(), Some(100.0));
+    }
+}

@@ -226,7 +226,7 @@ fn phase(structure: &Structure, wavelength: Wavelength, last_deg: f64) -> Result
     let options = PredictOptions {
         wavelength,
         from_deg: 0.5,
-        to_deg: (last_deg + BEYOND_DEG).min(179.5),
+        to_deg: super::predict::beyond(last_deg, BEYOND_DEG, wavelength),
         dispersion: true,
         polarisation: Polarisation::Unpolarised,
         slit: Slit::Fixed,
@@ -234,8 +234,8 @@ fn phase(structure: &Structure, wavelength: Wavelength, last_deg: f64) -> Result
     let predicted = pattern::predict(&[(structure, 1.0)], &options).map_err(|error| {
         Failure::option(Diagnostic::new(
             error.to_string(),
-            "a structure whose lines can be predicted",
-            "correct the structure",
+            "a structure whose lines can be predicted at this wavelength",
+            "see the reason; correct structure or wavelength",
         ))
     })?;
     let reflections = predicted

@@ -109,7 +109,7 @@ pub fn run(args: &PredictArgs) -> Result<Done, Failure> {
     let options = PredictOptions {
         wavelength: radiation.primary,
         from_deg: (args.from - BEYOND_DEG).max(0.05),
-        to_deg: beyond(args.to, radiation.primary),
+        to_deg: beyond(args.to, BEYOND_DEG, radiation.primary),
         dispersion: !args.no_dispersion,
         polarisation: args
             .monochromator
@@ -171,10 +171,10 @@ pub fn run(args: &PredictArgs) -> Result<Done, Failure> {
 }
 
 /// The end of the range with its margin, which never asks for more than the scattering factors hold: s = sin θ/λ ≤ 2 Å⁻¹.
-fn beyond(to_deg: f64, wavelength: Wavelength) -> f64 {
+pub fn beyond(to_deg: f64, margin_deg: f64, wavelength: Wavelength) -> f64 {
     let sine = structure_factor::tables::S_MAX * wavelength.angstrom();
     let last = if sine < 1.0 { 2.0 * sine.asin().to_degrees() } else { 180.0 };
-    (to_deg + BEYOND_DEG).min(179.9).min(last).max(to_deg)
+    (to_deg + margin_deg).min(179.9).min(last).max(to_deg)
 }
 
 fn check_numbers(args: &PredictArgs) -> Result<(), Failure> {
@@ -228,10 +228,10 @@ fn mass_fractions(args: &PredictArgs, count: usize) -> Result<Vec<f64>, Failure>
         return Ok(vec![1.0 / count as f64; count]);
     }
     let sum: f64 = given.iter().sum();
-    if given.len() != count || given.iter().any(|w| !(*w >= 0.0 && w.is_finite())) || sum <= 0.0 {
+    if given.len() != count || given.iter().any(|w| !(*w >= 0.0 && w.is_finite())) || !(sum > 0.0 && sum.is_finite()) {
         return Err(Failure::option(Diagnostic::new(
             format!("{} mass fractions for {count} structures", given.len()),
-            "one number for each structure, none below 0, not all 0",
+            "one number for each structure, none below 0, with a finite sum above 0",
             "give them in the order of the files; they are scaled to a sum of 1",
         )));
     }

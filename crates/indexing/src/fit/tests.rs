@@ -154,3 +154,24 @@ fn what_cannot_be_fitted_is_refused_with_its_reason() {
     assert!(text(fit(&[[1, 0, 0], [2, 0, 0], [1, 1, 0]], Some(0.01)).unwrap_err()).contains("leave c open"));
     assert!(text(fit(&[[0, 0, 0], [2, 0, 0]], Some(0.01)).unwrap_err()).contains("0 0 0"));
 }
+
+#[test]
+fn the_uncertainty_of_a_triclinic_volume_is_that_of_moved_lines() {
+    // u²(V) = Σ (∂V/∂y)² u² with ∂V/∂y from fits of lists with one line moved: no derivative of the volume enters.
+    let truth = Cell::new(5.1, 6.2, 7.3, 81.0, 95.0, 107.0).unwrap();
+    let volume = |list: &[IndexedLine]| {
+        fit_cell(list, AxisSystem::Triclinic, &truth, copper(), &FitOptions::default()).unwrap().volume
+    };
+    let exact = lines(&truth, &MANY, 0.0, 0.0, Some(0.01));
+    let base = volume(&exact);
+    let mut variance = 0.0;
+    for k in 0..exact.len() {
+        let moved = |step: f64| {
+            let mut list = exact.clone();
+            list[k].two_theta = TwoTheta::from_deg(list[k].two_theta.deg() + step);
+            volume(&list).value
+        };
+        variance += ((moved(1e-3) - moved(-1e-3)) / 2e-3 * 0.01).powi(2);
+    }
+    assert!((base.u / variance.sqrt() - 1.0).abs() < 1e-4, "{} {}", base.u, variance.sqrt());
+}
