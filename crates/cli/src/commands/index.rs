@@ -39,6 +39,12 @@ pub struct IndexArgs {
     /// What is known of the instrument's zero, degrees 2θ
     #[arg(long, value_name = "VALUE,U", value_parser = args::value_and_u, default_value = "0,0.05", allow_hyphen_values = true)]
     pub zero: Measured,
+    /// Radius of the goniometer, mm; with it --displacement is in mm
+    #[arg(long, value_name = "MM")]
+    pub radius: Option<f64>,
+    /// What is known of the specimen's displacement, mm (s/R without --radius); default: s/R = 0 ± 0.0004, 0.1 mm at 240 mm
+    #[arg(long, value_name = "VALUE,U", value_parser = args::value_and_u, allow_hyphen_values = true)]
+    pub displacement: Option<Measured>,
     /// The one kind of atom in the powder, such as Fe
     #[arg(long, value_name = "SYMBOL", conflicts_with = "formula")]
     pub element: Option<String>,
@@ -90,6 +96,7 @@ pub fn run(args: &IndexArgs) -> Result<Done, Failure> {
     let content = content(args)?;
     let options = CubicOptions {
         zero_deg: args.zero,
+        displacement_over_radius: displacement(args)?,
         from_deg: args.from,
         satellites: satellites(anode),
         content: content.as_ref().map(|known| known.content),
@@ -108,6 +115,7 @@ pub fn run(args: &IndexArgs) -> Result<Done, Failure> {
         peaks: &peaks,
         notes: &notes,
         content: content.as_ref(),
+        radius_mm: args.radius,
     };
     let mut outputs = Outputs::default();
     let text = render::human(&answer, &context, args.readings);
@@ -130,6 +138,20 @@ pub fn run(args: &IndexArgs) -> Result<Done, Failure> {
     }
     let remarks = if answer.found || !args.output.takes_stdout() { Vec::new() } else { vec![answer.verdict.clone()] };
     Ok(Done { outputs, exit_code: if answer.found { 0 } else { 3 }, remarks })
+}
+
+/// The prior of s/R: as given, else the one of the search.
+fn displacement(args: &IndexArgs) -> Result<Measured, Failure> {
+    let radius = args.radius.unwrap_or(1.0);
+    if !(radius > 0.0 && radius.is_finite()) {
+        return Err(Failure::option(Diagnostic::new(
+            format!("--radius {radius}"),
+            "millimetres above 0",
+            "state the radius of the goniometer in mm, such as 240",
+        )));
+    }
+    let given = args.displacement.map(|d| Measured::new(d.value / radius, d.u / radius));
+    Ok(given.unwrap_or(CubicOptions::default().displacement_over_radius))
 }
 
 /// Satellites are looked for where a tube is named: a single wavelength has none.

@@ -2,7 +2,7 @@
 
 use std::fmt::Write as _;
 
-use indexing::cubic::{Centring, CubicAnswer, LineOfReading, Reading, Status, Twin, TwinKind};
+use indexing::cubic::{Centring, CubicAnswer, LineOfReading, MissingLine, Reading, Status, Twin, TwinKind};
 use indexing::materials::Arrangement;
 use serde_json::{Value, json};
 use values::{Measured, Peak};
@@ -22,6 +22,8 @@ pub struct Context<'a> {
     pub notes: &'a [String],
     /// What the powder consists of, where that is known.
     pub content: Option<&'a Known>,
+    /// Radius of the goniometer, mm, where it is known.
+    pub radius_mm: Option<f64>,
 }
 
 /// The JSON document.
@@ -77,8 +79,10 @@ fn solution(reading: &Reading, context: &Context<'_>) -> Value {
         .lines
         .iter()
         .filter_map(|line| match &line.status {
-            Status::Satellite { name, of } => Some(json!({"two_theta_deg": line.two_theta_deg, "radiation": name,
-                "of_two_theta_deg": context.peaks.get(*of).map(|p| p.two_theta.deg())})),
+            Status::Satellite { name, of, sure } => {
+                Some(json!({"two_theta_deg": line.two_theta_deg, "radiation": name, "sure": sure,
+                "of_two_theta_deg": context.peaks.get(*of).map(|p| p.two_theta.deg())}))
+            }
             _ => None,
         })
         .collect();
@@ -93,7 +97,7 @@ fn solution(reading: &Reading, context: &Context<'_>) -> Value {
         "volume_A3": reading.volume.value,
         "u_volume_A3": reading.volume.u,
         "covariance": reading.covariance,
-        "parameters": ["a", "zero_deg"],
+        "parameters": ["a", "zero_deg", "displacement_over_radius"],
         "M20": merit.filter(|m| m.n == 20).map(|m| m.m),
         "M_N": merit.map(|m| m.m),
         "F_N": merit.map(|m| m.f),
@@ -104,6 +108,9 @@ fn solution(reading: &Reading, context: &Context<'_>) -> Value {
         "ln_evidence": reading.ln_evidence,
         "zero_deg": reading.zero_deg.value,
         "u_zero_deg": reading.zero_deg.u,
+        "displacement_over_radius": {"value": reading.displacement_over_radius.value, "u": reading.displacement_over_radius.u},
+        "displacement_mm": context.radius_mm.map(|r| json!({"value": reading.displacement_over_radius.value * r,
+            "u": reading.displacement_over_radius.u * r})),
         "u_factor": reading.u_factor,
         "estimated_u_two_theta_deg": reading.estimated_u_deg,
         "chi2_reduced": reading.chi2_reduced,
@@ -146,6 +153,15 @@ fn packing(reading: &Reading, context: &Context<'_>) -> Option<Packing> {
     Some(Packing { name, fraction: arrangement.packing_fraction(), radius: arrangement.touching_radius(reading.a) })
 }
 
+/// Displacement in mm where the radius is known, else s/R.
+fn displacement(reading: &Reading, context: &Context<'_>) -> String {
+    let over_radius = reading.displacement_over_radius;
+    match context.radius_mm {
+        Some(radius) => format!("{} mm", Measured::new(over_radius.value * radius, over_radius.u * radius)),
+        None => format!("s/R = {over_radius}"),
+    }
+}
+
 /// One row for each line of each reading.
 pub fn csv(answer: &CubicAnswer, context: &Context<'_>) -> String {
     let mut text = String::from("rank,centring,a_A,two_theta_deg,q_ratio,N,h,k,l,calc_deg,difference_deg,status\n");
@@ -175,13 +191,15 @@ fn status(line: &LineOfReading, context: &Context<'_>) -> String {
     match &line.status {
         Status::Used => String::new(),
         Status::Unindexed => "unindexed".to_owned(),
-        Status::Satellite { name, of } => {
+        Status::Satellite { name, of, sure } => {
             let strong = context.peaks.get(*of).map_or_else(String::new, |p| format!(" of {:.3}°", p.two_theta.deg()));
-            format!("{}{strong}", table::radiation(name))
+            format!("{}{}{strong}", if *sure { "" } else { "may be " }, table::radiation(name))
         }
     }
 }
 
+/// Calculated lines without an observed one that the table names.
+const SHOWN_MISSING: usize = 8;
 /// Lattices with the same lines in this list only that the table names; exact ones are all named.
 const SHOWN_TWINS: usize = 2;
 
@@ -231,8 +249,9 @@ fn reading_text(reading: &Reading, context: &Context<'_>) -> String {
     );
     let _ = writeln!(
         text,
-        "   zero {}°; {}; evidence {:.1} nats over random lines; {} unindexed",
+        "   zero {}°; displacement {}; {}; evidence {:.1} nats over random lines; {} unindexed",
         reading.zero_deg,
+        displacement(reading, context),
         reading.merit.map_or_else(|| "M and F: – (more than two lines unindexed)".to_owned(), |m| m.to_string()),
         reading.ln_evidence,
         reading.unindexed().count()
@@ -304,25 +323,14 @@ fn reading_text(reading: &Reading, context: &Context<'_>) -> String {
         &rows,
     ));
     if !reading.missing.is_empty() {
-        let names: Vec<String> = reading
-            .missing
-            .iter()
-            .take(8)
-            .map(|m| {
-                format!(
-                    "{} ({:.2}°)",
-                    m.hkl.iter().map(|hkl| table::hkl(*hkl)).collect::<Vec<_>>().join("/"),
-                    m.two_theta_deg
-                )
-            })
-            .collect();
-        let more = reading.missing.len().saturating_sub(8);
-        let _ = writeln!(
-            text,
-            "   not seen: {}{}",
-            names.join(", "),
-            if more > 0 { format!(" and {more} more") } else { String::new() }
-        );
+        let name = |m: &MissingLine| {
+            let triples: Vec<String> = m.hkl.iter().map(|hkl| table::hkl(*hkl)).collect();
+            format!("{} ({:.2}°)", triples.join("/"), m.two_theta_deg)
+        };
+        let names: Vec<String> = reading.missing.iter().take(SHOWN_MISSING).map(name).collect();
+        let more = reading.missing.len().saturating_sub(SHOWN_MISSING);
+        let rest = if more > 0 { format!(" and {more} more") } else { String::new() };
+        text.push_str(&table::paragraph(&format!("not seen: {}{rest}", names.join(", ")), 3));
     }
     text
 }
