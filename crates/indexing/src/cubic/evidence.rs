@@ -233,17 +233,22 @@ fn assign(
 
 /// Lets a calculated line explain one observed line only, weighs each line and returns ln L.
 pub(crate) fn likelihood(lines: &Lines, scale: f64, assigned: &mut [Match]) -> Option<f64> {
-    // One calculated line explains one observed line.
+    // Of the observed lines at one calculated line, which follow each other, the nearest keeps it.
+    let mut holder = 0;
     for i in 1..assigned.len() {
-        let (before, after) = assigned.split_at_mut(i);
-        let (left, right) = (&mut before[i - 1], &mut after[0]);
-        if left.line != 0 && left.line == right.line {
-            if left.difference_deg.abs() <= right.difference_deg.abs() {
-                // The loser keeps its N for the next comparison only if it is the winner; three at one line are rare.
-                right.line = 0;
-            } else {
-                left.line = 0;
-            }
+        if assigned[i].line == 0 {
+            continue;
+        }
+        let mut loser = None;
+        if assigned[holder].line == assigned[i].line {
+            let nearer = assigned[i].difference_deg.abs() < assigned[holder].difference_deg.abs();
+            loser = Some(if nearer { holder } else { i });
+        }
+        if loser != Some(i) {
+            holder = i;
+        }
+        if let Some(loser) = loser {
+            assigned[loser].line = 0;
         }
     }
     let mut ln_likelihood = 0.0;
@@ -261,4 +266,31 @@ pub(crate) fn likelihood(lines: &Lines, scale: f64, assigned: &mut [Match]) -> O
         ln_likelihood += (total / foreign_density).ln();
     }
     ln_likelihood.is_finite().then_some(ln_likelihood)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::{Match, likelihood};
+    use crate::cubic::CubicOptions;
+    use crate::cubic::lines::Lines;
+    use values::{Peak, TwoTheta, Wavelength};
+
+    #[test]
+    fn of_three_observed_lines_at_one_calculated_line_the_nearest_alone_keeps_it() {
+        let peaks: Vec<Peak> = [20.0, 30.0, 30.1, 30.2, 40.0]
+            .iter()
+            .map(|deg| Peak::at(TwoTheta::from_deg(*deg)).with_u_deg(0.05))
+            .collect();
+        let copper = Wavelength::from_angstrom(1.5405929).unwrap();
+        let lines = Lines::new(&peaks, copper, &CubicOptions::default()).unwrap();
+        let hit = |line: usize, difference_deg: f64| Match { line, share: 0.2, difference_deg, weight: 0.0 };
+        for (middle, kept) in [([0.01, 0.11, 0.21], 1), ([-0.11, -0.01, 0.09], 2), ([-0.21, -0.11, -0.01], 3)] {
+            let mut matches = [hit(3, 0.0), hit(8, middle[0]), hit(8, middle[1]), hit(8, middle[2]), hit(16, 0.0)];
+            likelihood(&lines, 1.0, &mut matches).unwrap();
+            for (i, hit) in matches.iter().enumerate() {
+                let holds = i == 0 || i == 4 || i == kept;
+                assert_eq!((hit.line != 0, hit.weight > 0.5), (holds, holds), "line {i}, nearest {kept}");
+            }
+        }
+    }
 }
