@@ -106,10 +106,10 @@ impl Refined {
 
 /// Scales of the s.u. with the logarithm of their prior weight.
 pub(crate) fn scales(stated: bool) -> Vec<(f64, f64)> {
-    // Stated s.u. may be too small by a common factor, never too large: half of a log-normal of width ln 1.5.
+    // Stated s.u. may be too small by a common factor, never too large: half of a log-normal of width 0.3.
     // Without: log-normal around 0.012° with width ln 2, the range of laboratory work (common practice, no source).
     let (grid, centre, width): (&[f64], f64, f64) = if stated {
-        (&[1.0, 1.35, 1.8, 2.5, 3.5], 1.0, 1.5f64.ln())
+        (&[1.0, 1.35, 1.8, 2.5, 3.5], 1.0, 0.3)
     } else {
         (&[0.002, 0.004, 0.007, 0.012, 0.02, 0.035], 0.012, 2f64.ln())
     };
