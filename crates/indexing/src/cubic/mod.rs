@@ -5,8 +5,8 @@
 //!
 //! The steps: `lines` (Q, satellites) → `candidates` (edge and zero from pairs of lines) → `evidence` (refinement, likelihood
 //! against random lines) → `rivals` (tetragonal and hexagonal lattices that do better) → `weigh` (probabilities, ambiguities)
-//! → `readings` (final fit, figures of merit, ratio table). Sequences of N = h² + k² + l² stand in `sequence`, lattices of
-//! other systems with the very same lines in `twins`.
+//! → `readings` (final fit, figures of merit, ratio table) → `words` (sentences). Sequences of N = h² + k² + l² stand in
+//! `sequence`, lattices of other systems with the very same lines in `twins`, normal equations in `normal`.
 //!
 //! Probabilities are provisional: they come from a stated likelihood and a few constants chosen on synthetic lists.
 
@@ -20,6 +20,7 @@ mod rivals;
 mod sequence;
 mod twins;
 mod weigh;
+mod words;
 
 pub use answer::{CubicAnswer, LineOfReading, MissingLine, Reading, Satellite, Status};
 pub use sequence::{Centring, indices};
