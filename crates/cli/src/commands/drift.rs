@@ -219,6 +219,9 @@ fn distinct(reference: &LineList, batches: &[LineList]) -> Result<(), Failure> {
     Ok(())
 }
 
+/// Photon energies of the dispersion tables, eV.
+const DISPERSION_EV: std::ops::RangeInclusive<f64> = 2_000.0..=60_000.0;
+
 /// Degrees beyond the last line in which reflections are still offered: the cell may be off by a per cent.
 const BEYOND_DEG: f64 = 6.0;
 
@@ -227,7 +230,8 @@ fn phase(structure: &Structure, wavelength: Wavelength, last_deg: f64) -> Result
         wavelength,
         from_deg: 0.5,
         to_deg: super::predict::beyond(last_deg, BEYOND_DEG, wavelength),
-        dispersion: true,
+        // F² only ranks the lines here: where f′ and f″ are not tabulated it goes without.
+        dispersion: DISPERSION_EV.contains(&wavelength.energy_ev()),
         polarisation: Polarisation::Unpolarised,
         slit: Slit::Fixed,
     };

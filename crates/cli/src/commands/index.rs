@@ -4,7 +4,7 @@ use std::path::PathBuf;
 use std::time::Instant;
 
 use clap::Args;
-use indexing::cubic::{self, Content, CubicOptions, Satellite};
+use indexing::cubic::{self, Content, CubicError, CubicOptions, Satellite};
 use instrument::Anode;
 use values::{Diagnostic, Measured};
 
@@ -102,13 +102,7 @@ pub fn run(args: &IndexArgs) -> Result<Done, Failure> {
         content: content.as_ref().map(|known| known.content),
         ..CubicOptions::default()
     };
-    let answer = cubic::search(&peaks, radiation.primary, &options).map_err(|error| {
-        Failure::option(Diagnostic::new(
-            format!("{name}: {error}"),
-            "three lines or more with positions between 0 and 180° 2θ, and options in their range",
-            "see the reason; twenty lines from the lowest angle on serve best",
-        ))
-    })?;
+    let answer = cubic::search(&peaks, radiation.primary, &options).map_err(|error| refused(&name, &error))?;
     let context = render::Context {
         name: &name,
         radiation: &radiation.label,
@@ -138,6 +132,19 @@ pub fn run(args: &IndexArgs) -> Result<Done, Failure> {
     }
     let remarks = if answer.found || !args.output.takes_stdout() { Vec::new() } else { vec![answer.verdict.clone()] };
     Ok(Done { outputs, exit_code: if answer.found { 0 } else { 3 }, remarks })
+}
+
+/// Why a list can't be searched, and what to do.
+fn refused(name: &str, error: &CubicError) -> Failure {
+    let (expected, mend) = match error {
+        CubicError::TooFew { .. } => ("three lines or more", "add lines: twenty from the lowest angle on serve best"),
+        CubicError::Position { .. } => ("positions between 0 and 180° 2θ", "correct the list"),
+        CubicError::Uncertainty { .. } => {
+            ("standard uncertainties above 0", "correct the list, or leave the column out")
+        }
+        CubicError::Option { expected, .. } => (*expected, "correct the option"),
+    };
+    Failure::option(Diagnostic::new(format!("{name}: {error}"), expected, mend))
 }
 
 /// The prior of s/R: as given, else the one of the search.

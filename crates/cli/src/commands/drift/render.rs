@@ -171,14 +171,26 @@ pub fn human(report: &Report, radiation: &str, phase: &str, notes: &[String], li
     }
     for list in lists(report) {
         for left in list.foreign.iter().chain(&list.ambiguous) {
-            let remark = format!("{}: line at {:.4}° left out, {}", list.id, left.observed_deg, left.reason);
+            let remark = format!(
+                "{}: line at {:.4}° left out, {}.",
+                list.id,
+                left.observed_deg,
+                left.reason.trim_end_matches('.')
+            );
             text.push_str(&table::paragraph(&remark, 0));
         }
     }
     text.push('\n');
     text.push_str(&cells(report));
-    let _ = writeln!(text, "Zero after the fit: {}°.", report.zero_deg);
-    for note in notes.iter().chain(&report.notes).chain(&report.reference.notes) {
+    if report.zero_deg.u > 0.0 {
+        let _ = writeln!(text, "Zero after the fit: {}°.", report.zero_deg);
+    } else {
+        let _ = writeln!(text, "Zero taken as exact: {}°.", report.zero_deg.value);
+    }
+    for note in &report.reference.notes {
+        text.push_str(&table::paragraph(&format!("{}: {}", report.reference.id, table::sentence(note)), 0));
+    }
+    for note in notes.iter().chain(&report.notes) {
         text.push_str(&table::paragraph(&table::sentence(note), 0));
     }
     if lines {
