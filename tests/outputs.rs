@@ -79,7 +79,10 @@ fn a_file_that_was_there_is_replaced_whole() {
     let output = run(&[&PREDICT[..], &["--csv", path.to_str().unwrap()]].concat());
     assert_eq!(output.status.code(), Some(0));
     let text = std::fs::read_to_string(&path).unwrap();
-    assert!(text.starts_with("phase,h,k,l,multiplicity,d_A,two_theta_deg,F2,intensity\n") && !text.contains("before"));
+    assert!(
+        text.starts_with("phase,h,k,l,multiplicity,d_A,two_theta_deg,F2,intensity,u_d_A,u_two_theta_deg\n")
+            && !text.contains("before")
+    );
     assert!(!text.contains('\r'));
 }
 

@@ -145,3 +145,18 @@ fn the_uncertainties_of_an_indexed_cell_are_the_roots_of_its_covariance() {
     let (a, u) = (number(&first["a"]["value"]), number(&first["a"]["u"]));
     assert!((number(&first["u_volume_A3"]) / (3.0 * a * a * u) - 1.0).abs() < 1e-6, "{first}");
 }
+
+#[test]
+fn a_prediction_heads_each_phase_and_carries_the_uncertainty_of_its_cell() {
+    let output = Command::new(env!("CARGO_BIN_EXE_latticewright"))
+        .args(["predict", "examples/plant/zincite.cif", "--anode", "Cu", "--to", "40"])
+        .current_dir(root())
+        .output()
+        .unwrap();
+    let text = String::from_utf8(output.stdout).unwrap();
+    assert!(text.starts_with("KV-22_zinc_oxide: P 63 m c\n"), "{text}");
+    // By hand: u(d) of 002 is half of u(c) = 0.0002 Å; u(2θ) = 2 tan θ u(d)/d = 0.00136°.
+    assert!(text.contains("2.60355(10)  34.4187(14)"), "{text}");
+    // Three edges are printed, the first two with the one s.u. of a.
+    assert!(text.contains("3.25020(10) 3.25020(10) 5.2071(2) Å"), "{text}");
+}

@@ -10,6 +10,7 @@ pub mod intensity;
 pub mod pattern;
 pub mod predict;
 pub mod profile;
+mod propagate;
 
 pub use intensity::{Polarisation, Slit, lorentz_polarisation};
 pub use pattern::{Pattern, PatternOptions};

@@ -5,6 +5,7 @@ use structure_factor::{ScatteringModel, Structure};
 use values::{TwoTheta, Wavelength};
 
 use crate::intensity::{Polarisation, Slit, lorentz_polarisation};
+use crate::propagate::Moved;
 
 /// Circumstances of a prediction.
 #[derive(Clone, Copy, Debug)]
@@ -34,8 +35,12 @@ pub struct PredictedReflection {
     pub multiplicity: u32,
     /// Spacing, Å.
     pub d_angstrom: f64,
+    /// Its standard uncertainty, Å, from those of the cell; `None` where the file states none.
+    pub u_d_angstrom: Option<f64>,
     /// Bragg angle.
     pub two_theta: TwoTheta,
+    /// Its standard uncertainty, degrees 2θ, from those of the cell alone.
+    pub u_two_theta_deg: Option<f64>,
     /// F² in e² per cell, mean of the Friedel mates.
     pub f_squared: f64,
     /// Integrated intensity; the strongest of all phases is 100.
@@ -51,8 +56,12 @@ pub struct PhasePrediction {
     pub space_group: String,
     /// Cell.
     pub cell: Cell,
+    /// Standard uncertainties of the cell as the file states them, Å and degrees.
+    pub cell_u: Option<[f64; 6]>,
     /// Volume of the cell, Å³.
     pub volume_a3: f64,
+    /// Its standard uncertainty, where the cell has one; that of the density is the same in relative terms.
+    pub u_volume_a3: Option<f64>,
     /// Density, g/cm³.
     pub density_g_cm3: f64,
     /// Share of the mixture by mass, 0 to 1; the shares sum to 1.
@@ -124,19 +133,24 @@ fn predict_phase(
         return Err(failed("the atoms of the cell weigh nothing; are all occupancies 0?".to_owned()));
     }
     let scale = mass_fraction / (density_g_cm3 * volume_a3 * volume_a3);
+    let moved = Moved::new(&structure.cell, &structure.group, structure.cell_u);
     let reflections = listed
         .iter()
         .zip(f_squared)
         .filter_map(|(reflection, f_squared)| {
             let two_theta = TwoTheta::from_d(reflection.d, options.wavelength)?;
             let theta = two_theta.theta_rad();
+            let u_d_angstrom = moved.as_ref().map(|m| m.u(|cell| cell.d(reflection.hkl)));
             let angular = lorentz_polarisation(theta, options.polarisation) * options.slit.factor(theta);
             Some(PredictedReflection {
                 hkl: reflection.hkl,
                 label: label(structure, reflection.hkl),
                 multiplicity: reflection.multiplicity,
                 d_angstrom: reflection.d,
+                u_d_angstrom,
                 two_theta,
+                // Δ2θ = −2 tan θ Δd/d.
+                u_two_theta_deg: u_d_angstrom.map(|u| (2.0 * theta.tan() * u / reflection.d).to_degrees()),
                 f_squared,
                 intensity: scale * f64::from(reflection.multiplicity) * f_squared * angular,
             })
@@ -146,7 +160,9 @@ fn predict_phase(
         name: structure.name.clone(),
         space_group: structure.group.xhm().to_owned(),
         cell: structure.cell,
+        cell_u: structure.cell_u,
         volume_a3,
+        u_volume_a3: moved.as_ref().map(|m| m.u(Cell::volume)),
         density_g_cm3,
         mass_fraction,
         reflections,

@@ -78,7 +78,7 @@ impl Structure {
 
 fn structure(block: cif::Block<'_>, index: usize) -> Result<Structure, Diagnostic> {
     let mut notes = Vec::new();
-    let cell = cell::read(block, &mut notes)?;
+    let (cell, cell_u) = cell::read(block, &mut notes)?;
     let statement = symmetry::statement(block, &mut notes)?;
     let group = symmetry::group(block, &statement, &cell, &mut notes)?;
     let stated_formula =
@@ -90,7 +90,7 @@ fn structure(block: cif::Block<'_>, index: usize) -> Result<Structure, Diagnosti
     let stated_z = number(block, "_cell.formula_units_Z")?.filter(|z| *z > 0.0);
     let atoms::Read { atoms, multiplicities } = atoms::read(block, &cell, &declared, &mut notes)?;
     let name = if block.name().is_empty() { format!("block {}", index + 1) } else { block.name().to_owned() };
-    let structure = Structure { name, cell, group, atoms, notes, expansion: None, stated_formula, stated_z };
+    let structure = Structure { name, cell, cell_u, group, atoms, notes, expansion: None, stated_formula, stated_z };
     let mut structure = checks::noted(origin::chosen(structure, &statement));
     multiplicity_contradictions(&mut structure, &multiplicities);
     density_contradiction(&mut structure, block)?;

@@ -74,6 +74,7 @@ impl Structure {
         let structure = Self {
             name,
             cell,
+            cell_u: None,
             group: resolved.group,
             atoms,
             notes,

@@ -46,6 +46,9 @@ pub struct Structure {
     pub name: String,
     /// Cell, in the setting of `group`.
     pub cell: Cell,
+    /// Standard uncertainties of a, b, c (Å) and α, β, γ (degrees) as the file states them, 0 where it states none for one;
+    /// `None` where it states none at all.
+    pub cell_u: Option<[f64; 6]>,
     /// Space group, with its operations.
     pub group: SpaceGroup,
     /// Atoms of the asymmetric unit.

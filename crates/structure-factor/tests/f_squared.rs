@@ -20,6 +20,7 @@ fn structure(name: &str, group: &str, cell: [f64; 6], atoms: Vec<Atom>) -> Struc
         notes: Vec::new(),
         expansion: None,
         stated_formula: None,
+        cell_u: None,
         stated_z: None,
     }
 }

@@ -126,6 +126,7 @@ fn the_fast_sum_is_the_plain_sum_in_groups_of_all_kinds() {
             notes: Vec::new(),
             expansion: None,
             stated_formula: None,
+            cell_u: None,
             stated_z: None,
         };
         let hkl = reflections(&cell, 1.2);
@@ -150,6 +151,7 @@ fn many_atoms_with_one_b_and_absurd_tensors_take_their_own_paths_to_the_same_num
         notes: Vec::new(),
         expansion: None,
         stated_formula: None,
+        cell_u: None,
         stated_z: None,
     };
     let hkl = reflections(&cell, 1.0);
@@ -171,6 +173,7 @@ fn the_order_and_choice_of_reflections_do_not_matter() {
         notes: Vec::new(),
         expansion: None,
         stated_formula: None,
+        cell_u: None,
         stated_z: None,
     };
     let model = ScatteringModel::new(&structure, None).unwrap();

@@ -132,6 +132,7 @@ fn each_move_is_listed_with_its_atom() {
         notes: Vec::new(),
         expansion: None,
         stated_formula: None,
+        cell_u: None,
         stated_z: None,
     };
     let notes = structure.moves();
@@ -151,6 +152,7 @@ fn numbers_that_are_not_finite_are_refused_by_name() {
         notes: Vec::new(),
         expansion: None,
         stated_formula: None,
+        cell_u: None,
         stated_z: None,
     };
     assert!(ScatteringModel::new(&structure, None).err().unwrap().to_string().starts_with("O1: a coordinate"));

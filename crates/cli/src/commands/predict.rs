@@ -9,7 +9,7 @@ use pattern::{
 };
 use serde_json::{Value, json};
 use structure_factor::Structure;
-use values::{Diagnostic, Wavelength};
+use values::{Diagnostic, Measured, Wavelength};
 
 use crate::args::{self, OutputArgs, RadiationArgs};
 use crate::caution;
@@ -264,13 +264,15 @@ fn to_json(phases: &[PhasePrediction], counts: Option<&Pattern>, radiation: &str
                 .reflections
                 .iter()
                 .map(|r| {
-                    json!({"h": r.hkl[0], "k": r.hkl[1], "l": r.hkl[2], "multiplicity": r.multiplicity, "d_A": r.d_angstrom,
-                           "two_theta_deg": r.two_theta.deg(), "F2": r.f_squared, "intensity": r.intensity})
+                    json!({"h": r.hkl[0], "k": r.hkl[1], "l": r.hkl[2], "multiplicity": r.multiplicity, "d_A": r.d_angstrom, "u_d_A": r.u_d_angstrom,
+                           "two_theta_deg": r.two_theta.deg(), "u_two_theta_deg": r.u_two_theta_deg, "F2": r.f_squared, "intensity": r.intensity})
                 })
                 .collect();
             json!({"name": p.name, "space_group": p.space_group,
                    "cell": {"a": a, "b": b, "c": c, "alpha": alpha, "beta": beta, "gamma": gamma},
-                   "volume_A3": p.volume_a3, "density_g_cm3": p.density_g_cm3, "mass_fraction": p.mass_fraction,
+                   "u_cell": p.cell_u.map(|[a, b, c, alpha, beta, gamma]| json!({"a": a, "b": b, "c": c, "alpha": alpha, "beta": beta, "gamma": gamma})),
+                   "volume_A3": p.volume_a3, "u_volume_A3": p.u_volume_a3, "density_g_cm3": p.density_g_cm3,
+                   "u_density_g_cm3": p.u_volume_a3.map(|u| p.density_g_cm3 * u / p.volume_a3), "mass_fraction": p.mass_fraction,
                    "notes": p.notes, "reflections": reflections})
         })
         .collect();
@@ -283,36 +285,57 @@ fn to_json(phases: &[PhasePrediction], counts: Option<&Pattern>, radiation: &str
 }
 
 fn to_csv(phases: &[PhasePrediction]) -> String {
-    let mut text = String::from("phase,h,k,l,multiplicity,d_A,two_theta_deg,F2,intensity\n");
+    let mut text = String::from("phase,h,k,l,multiplicity,d_A,two_theta_deg,F2,intensity,u_d_A,u_two_theta_deg\n");
     for phase in phases {
         let name = table::csv_field(&phase.name);
         for r in &phase.reflections {
             let [h, k, l] = r.hkl;
             let _ = writeln!(
                 text,
-                "{name},{h},{k},{l},{},{:.6},{:.5},{:.6e},{:.5}",
+                "{name},{h},{k},{l},{},{:.6},{:.5},{:.6e},{:.5},{},{}",
                 r.multiplicity,
                 r.d_angstrom,
                 r.two_theta.deg(),
                 r.f_squared,
-                r.intensity
+                r.intensity,
+                r.u_d_angstrom.map(|u| format!("{u:.2e}")).unwrap_or_default(),
+                r.u_two_theta_deg.map(|u| format!("{u:.2e}")).unwrap_or_default()
             );
         }
     }
     text
 }
 
+/// Cell, volume and density, with s.u. where the file states them.
+fn cell_line(phase: &PhasePrediction) -> String {
+    let six = phase.cell.parameters();
+    let u = phase.cell_u.unwrap_or_default();
+    let shown: Vec<String> = (0..6).map(|i| Measured::new(six[i], u[i]).to_string()).collect();
+    let density_u = phase.u_volume_a3.map(|u| phase.density_g_cm3 * u / phase.volume_a3);
+    let stated = if phase.cell_u.is_some() { "" } else { " (stated without s.u.: d and 2θ carry none)" };
+    format!(
+        "  cell {} Å, {}°{stated}; volume {} Å³; density {} g/cm³\n",
+        shown[..3].join(" "),
+        shown[3..].join(" "),
+        with_u(phase.volume_a3, phase.u_volume_a3, 3),
+        with_u(phase.density_g_cm3, density_u, 4)
+    )
+}
+
+/// A value with its s.u., or with a fixed number of decimals where it has none.
+fn with_u(value: f64, u: Option<f64>, decimals: usize) -> String {
+    match u.filter(|u| *u > 0.0) {
+        Some(u) => Measured::new(value, u).to_string(),
+        None => format!("{value:.decimals$}"),
+    }
+}
+
 /// The table for people: head of each phase, then the strongest reflections by angle.
 pub fn human(phases: &[PhasePrediction], all: bool, radiation: &str, notes: &[String]) -> String {
     let mut text = String::new();
     for phase in phases {
-        let [a, b, c, alpha, beta, gamma] = phase.cell.parameters();
         let _ = writeln!(text, "{}: {}", phase.name, phase.space_group);
-        let _ = writeln!(
-            text,
-            "  cell {a} {b} {c} Å, {alpha} {beta} {gamma}°; volume {:.3} Å³; density {:.4} g/cm³",
-            phase.volume_a3, phase.density_g_cm3
-        );
+        text.push_str(&cell_line(phase));
         if phases.len() > 1 {
             let _ = writeln!(text, "  mass fraction {:.4}", phase.mass_fraction);
         }
@@ -343,8 +366,8 @@ pub fn human(phases: &[PhasePrediction], all: bool, radiation: &str, notes: &[St
             let mut row = vec![
                 table::hkl(r.label),
                 r.multiplicity.to_string(),
-                format!("{:.5}", r.d_angstrom),
-                format!("{:.4}", r.two_theta.deg()),
+                with_u(r.d_angstrom, r.u_d_angstrom, 5),
+                with_u(r.two_theta.deg(), r.u_two_theta_deg, 4),
                 format!("{:.2}", r.f_squared),
                 format!("{:.2}", r.intensity),
             ];

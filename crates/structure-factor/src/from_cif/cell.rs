@@ -7,15 +7,20 @@ use values::Diagnostic;
 const EDGES: [&str; 3] = ["_cell.length_a", "_cell.length_b", "_cell.length_c"];
 const ANGLES: [&str; 3] = ["_cell.angle_alpha", "_cell.angle_beta", "_cell.angle_gamma"];
 
-/// Reads the six parameters; an angle that is missing is 90°, the default of the core dictionary, and noted.
-pub(super) fn read(block: Block<'_>, notes: &mut Vec<String>) -> Result<Cell, Diagnostic> {
+/// Reads the six parameters and their s.u., where any is stated; an angle that is missing is 90°, the default of the core
+/// dictionary, and noted.
+pub(super) fn read(block: Block<'_>, notes: &mut Vec<String>) -> Result<(Cell, Option<[f64; 6]>), Diagnostic> {
     let mut parameters = [90.0; 6];
+    let mut u = [0.0; 6];
     let mut values = [None; 6];
     for (index, internal) in EDGES.iter().chain(&ANGLES).enumerate() {
         values[index] = one(block, internal)?;
         let number = values[index].map(Value::number).transpose()?.flatten();
         match number {
-            Some(measured) => parameters[index] = measured.value,
+            Some(measured) => {
+                parameters[index] = measured.value;
+                u[index] = measured.u;
+            }
             None if index >= 3 => notes.push(format!("`{}` is not given and was taken as 90°", old_name(internal))),
             None => {
                 return Err(Diagnostic::new(
@@ -42,7 +47,7 @@ pub(super) fn read(block: Block<'_>, notes: &mut Vec<String>) -> Result<Cell, Di
         Diagnostic::new(found, expected, "correct the cell").at(place)
     })?;
     volume_contradiction(block, &cell, notes)?;
-    Ok(cell)
+    Ok((cell, u.iter().any(|x| *x > 0.0).then_some(u)))
 }
 
 /// The one value of an item.
