@@ -150,7 +150,7 @@ fn the_uncertainties_of_an_indexed_cell_are_the_roots_of_its_covariance() {
 fn a_prediction_heads_each_phase_and_carries_the_uncertainty_of_its_cell() {
     let output = Command::new(env!("CARGO_BIN_EXE_latticewright"))
         .args(["predict", "examples/plant/zincite.cif", "--anode", "Cu", "--to", "40"])
-        .current_dir(root())
+        .current_dir(Path::new(env!("CARGO_MANIFEST_DIR")).join("../.."))
         .output()
         .unwrap();
     let text = String::from_utf8(output.stdout).unwrap();
