@@ -56,7 +56,7 @@ pub(crate) struct Keyed {
 
 fn no_reference(id: &str, reason: &str) -> DriftError {
     DriftError::NoAnswer(Diagnostic::new(
-        format!("the reference {id} gives no cell: {reason}"),
+        format!("the reference, {id}, gives no cell: {reason}"),
         "lines of the phase in its structure",
         "check structure, wavelength and the list of lines",
     ))

@@ -157,7 +157,7 @@ fn a_reference_of_another_phase_or_a_wrong_structure_gives_no_answer() {
     for (reference, phase) in [(&other, oxide()), (&own, halite), (&other, monoclinic())] {
         match run(reference, std::slice::from_ref(&own), &phase, 60.0) {
             Err(DriftError::NoAnswer(message)) => {
-                assert!(message.found.contains(&format!("the reference {}", reference.id)), "{message}");
+                assert!(message.found.contains(&format!("the reference, {},", reference.id)), "{message}");
                 assert!(
                     message.found.contains("something else") || message.found.contains("nothing to test"),
                     "{message}"
