@@ -8,6 +8,8 @@ use values::{Diagnostic, Measured, Wavelength};
 
 use crate::commands::{demo, drift, index, predict};
 use crate::failure::Failure;
+use crate::output::Outputs;
+use crate::pictures;
 
 /// Powder diffraction for people who answer for powders: every number with its standard uncertainty
 #[derive(Parser)]
@@ -144,6 +146,44 @@ impl OutputArgs {
     /// Whether something else than the table goes to standard output.
     pub fn takes_stdout(&self) -> bool {
         self.json || [&self.csv, &self.svg, &self.html].into_iter().flatten().any(|p| crate::output::is_dash(p))
+    }
+
+    /// Whether a picture is asked for, alone or in a page.
+    pub fn wants_picture(&self) -> bool {
+        self.svg.is_some() || self.html.is_some()
+    }
+
+    /// What was asked for and nothing else: the JSON or the table on standard output, the files beside it. `title` heads the page.
+    ///
+    /// # Errors
+    /// The picture or the page can't be drawn.
+    pub fn deliver(
+        &self,
+        title: &str,
+        table: &str,
+        json: impl FnOnce() -> serde_json::Value,
+        csv: impl FnOnce() -> String,
+        picture: impl FnOnce() -> Result<String, Failure>,
+    ) -> Result<Outputs, Failure> {
+        let mut outputs = Outputs::default();
+        if self.json {
+            outputs.print(&(json().to_string() + "\n"));
+        } else if !self.takes_stdout() {
+            outputs.print(table);
+        }
+        if let Some(path) = &self.csv {
+            outputs.file(path, csv());
+        }
+        if self.wants_picture() {
+            let picture = picture()?;
+            if let Some(path) = &self.svg {
+                outputs.file(path, picture.clone());
+            }
+            if let Some(path) = &self.html {
+                outputs.file(path, pictures::page(title, table, picture)?);
+            }
+        }
+        Ok(outputs)
     }
 
     /// # Errors

@@ -10,9 +10,6 @@ pub const X_RAYS: &str =
 pub const DEFER: &str =
     "That no caution is shown does not mean that a powder is safe: local rules and licensed practice decide.";
 
-/// Ends every statement about drift.
-pub const RELEASE: &str = "A qualified person decides on release.";
-
 /// Elements whose powders are usually handled as toxic, radioactive or reactive.
 const TOXIC: [&str; 16] =
     ["Be", "As", "Se", "Cd", "Sb", "Te", "Hg", "Tl", "Pb", "Os", "Ni", "Co", "V", "Cr", "Ba", "P"];

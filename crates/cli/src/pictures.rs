@@ -208,6 +208,9 @@ fn decision(decision: Decision) -> DriftDecision {
     }
 }
 
+/// Endings of the files that each step of the demo leaves.
+pub const DEMO_ENDINGS: [&str; 4] = ["svg", "csv", "json", "txt"];
+
 /// One step of the demo for its page.
 pub struct DemoStep {
     /// The question that the step answers.
@@ -256,7 +259,7 @@ pub fn demo_page(steps: &[DemoStep]) -> Result<String, Failure> {
         .map(|step| PageSection {
             paragraphs: vec![format!("Exit code {}: {}.", step.exit_code, exit_code_in_words(step.exit_code))],
             command: Some(step.command.clone()),
-            links: ["svg", "csv", "json", "txt"]
+            links: DEMO_ENDINGS
                 .iter()
                 .map(|ending| PageLink {
                     text: format!("{}.{ending}", step.name),
@@ -270,7 +273,7 @@ pub fn demo_page(steps: &[DemoStep]) -> Result<String, Failure> {
         title: "Kestrel Vale: a plant that does not exist".to_owned(),
         lead: vec![
             "Three everyday jobs on invented data: a pattern predicted before the run, an unknown powder named from its lines, and eight batches compared with a reference. Batch kv-05 was made with a larger cell, batch kv-07 sat too low in its holder: see what the program says of each.".to_owned(),
-            caution::RELEASE.to_owned(),
+            drift::report::RELEASE.to_owned(),
         ],
         sections,
         footer: format!("All data on this page are invented. {} {}", caution::X_RAYS, caution::DEFER),

@@ -9,7 +9,7 @@ use crate::args::{Arguments, Command};
 use crate::commands;
 use crate::failure::Failure;
 use crate::output::Outputs;
-use crate::pictures::{self, DemoStep};
+use crate::pictures::{self, DEMO_ENDINGS, DemoStep};
 use crate::run::Done;
 
 /// Predict, index and compare on the files of an invented plant; writes a folder with a report
@@ -139,9 +139,7 @@ fn refuse_foreign(folder: &Path) -> Result<(), Failure> {
         let name = entry.file_name().to_string_lossy().into_owned();
         let ours = name == "plant"
             || name == "index.html"
-            || STEPS.iter().any(|(_, step, _)| {
-                ["svg", "csv", "json", "txt"].iter().any(|ending| name == format!("{step}.{ending}"))
-            });
+            || STEPS.iter().any(|(_, step, _)| DEMO_ENDINGS.iter().any(|ending| name == format!("{step}.{ending}")));
         if !ours {
             return Err(foreign(folder, &format!("holds {name}")));
         }

@@ -14,7 +14,7 @@ use crate::args::{self, OutputArgs, RadiationArgs};
 use crate::failure::Failure;
 use crate::output::{self, Outputs};
 use crate::run::Done;
-use crate::{caution, pictures, structures};
+use crate::{pictures, structures};
 
 mod render;
 
@@ -142,31 +142,19 @@ pub fn check(args: &CheckArgs) -> Result<Done, Failure> {
 }
 
 fn finish(args: &CheckArgs, report: &Report, radiation: &str, phase: &str, notes: &[String]) -> Result<Done, Failure> {
-    let mut outputs = Outputs::default();
-    let text = render::human(report, radiation, phase, notes, args.lines);
-    if args.output.json {
-        outputs.print(&(render::json(report, radiation, phase, notes).to_string() + "\n"));
-    } else if !args.output.takes_stdout() {
-        outputs.print(&text);
-    }
-    if let Some(path) = &args.output.csv {
-        outputs.file(path, render::csv(report));
-    }
-    if args.output.svg.is_some() || args.output.html.is_some() {
-        let picture = pictures::drift(report, phase)?;
-        if let Some(path) = &args.output.svg {
-            outputs.file(path, picture.clone());
-        }
-        if let Some(path) = &args.output.html {
-            outputs.file(path, pictures::page("Drift check", &text, picture)?);
-        }
-    }
+    let outputs = args.output.deliver(
+        "Drift check",
+        &render::human(report, radiation, phase, notes, args.lines),
+        || render::json(report, radiation, phase, notes),
+        || render::csv(report),
+        || pictures::drift(report, phase),
+    )?;
     let exit_code = match report.worst() {
         Some(Decision::Drifted) => 4,
         Some(Decision::Undecided) => 5,
         Some(Decision::Within) | None => 0,
     };
-    let remarks = if args.output.takes_stdout() { vec![caution::RELEASE.to_owned()] } else { Vec::new() };
+    let remarks = if args.output.takes_stdout() { vec![report.release.to_owned()] } else { Vec::new() };
     Ok(Done { outputs, exit_code, remarks })
 }
 
@@ -219,9 +207,6 @@ fn distinct(reference: &LineList, batches: &[LineList]) -> Result<(), Failure> {
     Ok(())
 }
 
-/// Photon energies of the dispersion tables, eV.
-const DISPERSION_EV: std::ops::RangeInclusive<f64> = 2_000.0..=60_000.0;
-
 /// Degrees beyond the last line in which reflections are still offered: the cell may be off by a per cent.
 const BEYOND_DEG: f64 = 6.0;
 
@@ -231,7 +216,7 @@ fn phase(structure: &Structure, wavelength: Wavelength, last_deg: f64) -> Result
         from_deg: 0.5,
         to_deg: super::predict::beyond(last_deg, BEYOND_DEG, wavelength),
         // F² only ranks the lines here: where f′ and f″ are not tabulated it goes without.
-        dispersion: DISPERSION_EV.contains(&wavelength.energy_ev()),
+        dispersion: structure_factor::tables::DISPERSION_EV.contains(&wavelength.energy_ev()),
         polarisation: Polarisation::Unpolarised,
         slit: Slit::Fixed,
     };

@@ -10,7 +10,7 @@ use values::{Diagnostic, Measured};
 
 use crate::args::{self, OutputArgs, RadiationArgs};
 use crate::failure::Failure;
-use crate::output::{self, Outputs};
+use crate::output;
 use crate::run::Done;
 use crate::{composition, pictures};
 
@@ -111,25 +111,13 @@ pub fn run(args: &IndexArgs) -> Result<Done, Failure> {
         content: content.as_ref(),
         radius_mm: args.radius,
     };
-    let mut outputs = Outputs::default();
-    let text = render::human(&answer, &context, args.readings);
-    if args.output.json {
-        outputs.print(&(render::json(&answer, &context, begin.elapsed().as_secs_f64()).to_string() + "\n"));
-    } else if !args.output.takes_stdout() {
-        outputs.print(&text);
-    }
-    if let Some(path) = &args.output.csv {
-        outputs.file(path, render::csv(&answer, &context));
-    }
-    if args.output.svg.is_some() || args.output.html.is_some() {
-        let picture = pictures::indexed(&answer, &peaks, &radiation)?;
-        if let Some(path) = &args.output.svg {
-            outputs.file(path, picture.clone());
-        }
-        if let Some(path) = &args.output.html {
-            outputs.file(path, pictures::page("Cubic lattice from a list of lines", &text, picture)?);
-        }
-    }
+    let outputs = args.output.deliver(
+        "Cubic lattice from a list of lines",
+        &render::human(&answer, &context, args.readings),
+        || render::json(&answer, &context, begin.elapsed().as_secs_f64()),
+        || render::csv(&answer, &context),
+        || pictures::indexed(&answer, &peaks, &radiation),
+    )?;
     let remarks = if answer.found || !args.output.takes_stdout() { Vec::new() } else { vec![answer.verdict.clone()] };
     Ok(Done { outputs, exit_code: if answer.found { 0 } else { 3 }, remarks })
 }

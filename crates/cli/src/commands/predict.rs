@@ -14,7 +14,6 @@ use values::{Diagnostic, Measured, Wavelength};
 use crate::args::{self, OutputArgs, RadiationArgs};
 use crate::caution;
 use crate::failure::Failure;
-use crate::output::Outputs;
 use crate::run::Done;
 use crate::{pictures, structures, table};
 
@@ -124,7 +123,7 @@ pub fn run(args: &PredictArgs) -> Result<Done, Failure> {
             "see the reason; a smaller --to or another structure may help",
         ))
     })?;
-    let drawn = args.pattern || args.output.svg.is_some() || args.output.html.is_some();
+    let drawn = args.pattern || args.output.wants_picture();
     let counts = drawn.then(|| {
         pattern::pattern::sum(
             &wide,
@@ -145,25 +144,18 @@ pub fn run(args: &PredictArgs) -> Result<Done, Failure> {
     if args.mass_fractions.is_empty() && listed.len() > 1 {
         notes.push("No mass fractions were given: equal parts by mass were taken.".to_owned());
     }
-    let mut outputs = Outputs::default();
-    if args.output.json {
-        outputs.print(
-            &(to_json(&listed, counts.as_ref().filter(|_| args.pattern), &radiation.label, &notes).to_string() + "\n"),
-        );
-    } else if !args.output.takes_stdout() {
-        outputs.print(&human(&listed, args.all, &radiation.label, &notes));
-    }
-    if let Some(path) = &args.output.csv {
-        outputs.file(path, to_csv(&listed));
-    }
-    let picture = counts.as_ref().map(|counts| pictures::predicted(&listed, counts, args, &radiation)).transpose()?;
-    if let (Some(path), Some(picture)) = (&args.output.svg, &picture) {
-        outputs.file(path, picture.clone());
-    }
-    if let (Some(path), Some(picture)) = (&args.output.html, picture) {
-        let text = human(&listed, args.all, &radiation.label, &notes);
-        outputs.file(path, pictures::page("Predicted pattern", &text, picture)?);
-    }
+    // Counts are there whenever a picture is asked for.
+    let outputs = args.output.deliver(
+        "Predicted pattern",
+        &human(&listed, args.all, &radiation.label, &notes),
+        || to_json(&listed, counts.as_ref().filter(|_| args.pattern), &radiation.label, &notes),
+        || to_csv(&listed),
+        || {
+            counts
+                .as_ref()
+                .map_or_else(|| Ok(String::new()), |counts| pictures::predicted(&listed, counts, args, &radiation))
+        },
+    )?;
     let mut remarks = vec![caution::X_RAYS.to_owned()];
     remarks.extend(caution::for_elements(loaded.iter().flat_map(|s| s.atoms.iter().map(|a| a.element.as_str()))));
     remarks.push(caution::DEFER.to_owned());

@@ -11,7 +11,7 @@ use super::elements::atomic_number;
 use crate::StructureFactorError;
 
 /// Range of the table in eV.
-const RANGE_EV: std::ops::RangeInclusive<f64> = 2000.0..=60000.0;
+pub const DISPERSION_EV: std::ops::RangeInclusive<f64> = 2000.0..=60000.0;
 /// Closer to an edge than this the value at this distance holds, eV.
 const GAP_EV: f64 = 0.05;
 /// Within this distance of an edge a note says so, eV.
@@ -125,7 +125,7 @@ pub fn absorption_edges_ev(element: &str) -> Vec<f64> {
 /// Source: Cromer & Liberman (1970), J. Chem. Phys. 53, 1891, as computed by gemmi 0.7.5.
 pub fn dispersion(element: &str, energy_ev: f64) -> Result<Dispersion, StructureFactorError> {
     let z = atomic_number(element)?;
-    if !RANGE_EV.contains(&energy_ev) {
+    if !DISPERSION_EV.contains(&energy_ev) {
         return Err(StructureFactorError::EnergyOutsideTable { energy_ev });
     }
     let none = |note| Ok(Dispersion { f1: 0.0, f2: 0.0, note });

@@ -4,7 +4,7 @@ mod dispersion;
 mod elements;
 mod scattering;
 
-pub use dispersion::{Dispersion, absorption_edges_ev, dispersion};
+pub use dispersion::{DISPERSION_EV, Dispersion, absorption_edges_ev, dispersion};
 pub use elements::{atomic_mass, atomic_number, element_symbol};
 pub(crate) use scattering::check_s;
 pub use scattering::{S_MAX, ScatteringFactor, f0, ion_name, scattering_factor, tabulated_ions};
